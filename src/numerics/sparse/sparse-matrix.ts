@@ -32,9 +32,9 @@ export function fromTriplets(
   cols: number,
   rowOf: ArrayLike<number>,
   colOf: ArrayLike<number>,
-  valueOf: ArrayLike<number>,
+  entryOf: ArrayLike<number>,
 ): SparseMatrix {
-  const count = valueOf.length;
+  const count = entryOf.length;
   const byRow = orderByKey(rowOf, rows, count);
   const order = new Int32Array(count);
   const start = new Int32Array(cols + 1);
@@ -52,10 +52,10 @@ export function fromTriplets(
     for (let p = start[j]; p < start[j + 1]; p++) {
       const t = order[p];
       if (end > begin && rowIndex[end - 1] === rowOf[t]) {
-        values[end - 1] += valueOf[t];
+        values[end - 1] += entryOf[t];
       } else {
         rowIndex[end] = rowOf[t];
-        values[end++] = valueOf[t];
+        values[end++] = entryOf[t];
       }
     }
     colStart[j + 1] = end;
