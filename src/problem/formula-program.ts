@@ -8,27 +8,27 @@ export type Step =
   | { readonly apply: Operation; readonly count: number };
 
 export type Operation = "+" | "-" | "*" | "/" | "^" | "negate" | FunctionName;
-export type FunctionName = keyof typeof functions;
+export type FunctionName = UnaryName | "min" | "max";
+type UnaryName = "sqrt" | "exp" | "log" | "log10" | "sin" | "cos" | "tan" | "atan" | "abs";
+type Real = (x: number) => number;
 
 /** The functions of one argument with their derivatives. */
-const functions = {
-  sqrt: { value: Math.sqrt, slope: (x: number) => 0.5 / Math.sqrt(x) },
+const functions: Readonly<Record<UnaryName, { readonly value: Real; readonly slope: Real }>> = {
+  sqrt: { value: Math.sqrt, slope: (x) => 0.5 / Math.sqrt(x) },
   exp: { value: Math.exp, slope: Math.exp },
-  log: { value: Math.log, slope: (x: number) => 1 / x },
-  log10: { value: Math.log10, slope: (x: number) => 1 / (x * Math.LN10) },
+  log: { value: Math.log, slope: (x) => 1 / x },
+  log10: { value: Math.log10, slope: (x) => 1 / (x * Math.LN10) },
   sin: { value: Math.sin, slope: Math.cos },
-  cos: { value: Math.cos, slope: (x: number) => -Math.sin(x) },
-  tan: { value: Math.tan, slope: (x: number) => 1 / Math.cos(x) ** 2 },
-  atan: { value: Math.atan, slope: (x: number) => 1 / (1 + x * x) },
+  cos: { value: Math.cos, slope: (x) => -Math.sin(x) },
+  tan: { value: Math.tan, slope: (x) => 1 / Math.cos(x) ** 2 },
+  atan: { value: Math.atan, slope: (x) => 1 / (1 + x * x) },
   abs: { value: Math.abs, slope: Math.sign },
-  min: null,
-  max: null,
-} as const;
+};
 
-export const functionNames: readonly string[] = Object.keys(functions);
+export const functionNames: readonly string[] = [...Object.keys(functions), "min", "max"];
 
 export function isFunctionName(name: string): name is FunctionName {
-  return Object.hasOwn(functions, name);
+  return functionNames.includes(name);
 }
 
 /** A value with its derivative with respect to the one name asked for. */

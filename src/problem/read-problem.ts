@@ -1,0 +1,124 @@
+import { basename } from "node:path";
+import { invariant } from "../errors.js";
+import { type ProblemDocument, readDocument } from "./document.js";
+import { FaultList } from "./fault-list.js";
+import { checkDof } from "./inline-matrix.js";
+import { pointerSegment } from "./json-text.js";
+import { readMargin } from "./margin-settings.js";
+import { type Matrices, readMatrices, TermMatrixChecker, termGroups } from "./matrices.js";
+import { MatrixFiles } from "./matrix-files.js";
+import { suggest } from "./nearest.js";
+import { isObjectWord, type Parameters, readFormula, readParameters } from "./parameters.js";
+import { readPerturbations } from "./perturbations.js";
+import type { Limit, Problem, Term } from "./problem.js";
+
+/**
+ * Reads a problem file and the matrix files it names, and checks everything that can be told without
+ * assembling the model.
+ *
+ * @throws InputError with all faults of the problem file and the first of each matrix file.
+ */
+export async function readProblem(path: string): Promise<Problem> {
+  const faults = new FaultList(path);
+  const document = await readDocument(path, faults);
+  const { content, input } = document;
+  const files = new MatrixFiles(path, faults);
+  const matrices = await readMatrices(document, files, faults);
+  const parameters = readParameters(document, faults);
+  const fixed = readFixed(document, matrices.dofs, faults);
+  const terms = readTerms(document, matrices, parameters, faults);
+  const perturbations = readPerturbations(document, matrices, parameters, faults);
+  const budget = readBudget(document, parameters, faults);
+  const free = matrices.dofs === null ? null : matrices.dofs - fixed.length;
+  const margin = readMargin(document, free, faults);
+  faults.throwIfAny();
+  invariant(matrices.dofs !== null, "missing dofs are a fault");
+  return {
+    title: content.title ?? basename(path, ".json"),
+    notes: content.notes ?? null,
+    path,
+    dofs: matrices.dofs,
+    fixed,
+    matrices: matrices.sound,
+    terms,
+    constants: parameters.constants,
+    design: parameters.design,
+    envelope: parameters.envelope,
+    perturbations,
+    margin,
+    budget,
+    tune: { seed: content.tune?.seed ?? 1, tolerance: content.tune?.tolerance ?? 1e-3 },
+    inputs: [input, ...files.inputs],
+  };
+}
+
+function readFixed({ content }: ProblemDocument, dofs: number | null, faults: FaultList): Int32Array {
+  const fixed = content.fixed ?? [];
+  const seen = new Set<number>();
+  fixed.forEach((dof, k) => {
+    if (dofs !== null) checkDof(dof, dofs, `/fixed/${k}`, faults);
+    if (seen.has(dof))
+      faults.add("input.fixed", `/fixed/${k}`, `dof ${dof} is fixed twice`, "Name each dof once.");
+    seen.add(dof);
+  });
+  if (dofs !== null && seen.size >= dofs) {
+    faults.add("input.fixed", "/fixed", `all ${dofs} dofs are fixed`, "Leave at least one dof free.");
+  }
+  return Int32Array.from(seen, (dof) => dof - 1).sort();
+}
+
+function readTerms(
+  { content, spoilt }: ProblemDocument,
+  matrices: Matrices,
+  parameters: Parameters,
+  faults: FaultList,
+): Term[] {
+  const checker = new TermMatrixChecker(matrices, faults);
+  const terms = termGroups.flatMap((group) =>
+    (content.terms?.[group] ?? []).flatMap((written, k) => {
+      if (written === null) return [];
+      const pointer = `/terms/${group}/${k}`;
+      const factor = readFormula(written.factor ?? 1, `${pointer}/factor`, parameters, faults);
+      const matrix = matrices.sound.get(written.matrix);
+      if (matrix !== undefined) checker.check(matrix, group, `${pointer}/matrix`);
+      else if (!matrices.declared.includes(written.matrix)) {
+        const hint = suggest(written.matrix, matrices.declared, "matrix");
+        faults.add(
+          "input.unknown-matrix",
+          `${pointer}/matrix`,
+          `no matrix is called "${written.matrix}"`,
+          hint,
+        );
+      }
+      const name = written.name ?? written.matrix;
+      return factor === null ? [] : [{ group, matrix: written.matrix, name, factor, pointer }];
+    }),
+  );
+  const written = termGroups.some((group) => (content.terms?.[group] ?? []).length > 0);
+  if (!written && content.terms !== undefined && !spoilt.has("terms")) {
+    faults.add(
+      "input.no-terms",
+      "/terms",
+      "the model has no terms",
+      "Add a term under mass and one under stiffness.",
+    );
+  }
+  return terms;
+}
+
+function readBudget({ content }: ProblemDocument, parameters: Parameters, faults: FaultList): Limit[] {
+  const operating = new Set(parameters.envelope.map(({ name }) => name));
+  return Object.entries(content.budget ?? {}).flatMap(([name, { formula: written, limit, unit }]) => {
+    const at = `/budget${pointerSegment(name)}`;
+    if (isObjectWord(name)) {
+      faults.add("input.name", at, `"${name}" cannot be a name: it has a meaning of its own`, "Rename it.");
+    }
+    const formula = readFormula(written, `${at}/formula`, parameters, faults);
+    const refused = formula?.names.filter((used) => operating.has(used)) ?? [];
+    for (const used of refused) {
+      const message = `"${used}" is an operating parameter; a budget depends on the design and constants only`;
+      faults.add("input.formula-name", `${at}/formula`, message, `Replace "${used}" by a constant.`);
+    }
+    return formula === null ? [] : [{ name, formula, limit, unit: unit ?? "" }];
+  });
+}
