@@ -115,3 +115,26 @@ export function multiplyTransposedAddInto(
     y[j] += alpha * sum;
   }
 }
+
+/** [α₁A₁ α₂A₂ …] side by side; `rows` tells the height when the list is empty. */
+export function concatenateScaled(
+  rows: number,
+  parts: readonly SparseMatrix[],
+  factors: ArrayLike<number>,
+): SparseMatrix {
+  const cols = parts.reduce((sum, a) => sum + a.cols, 0);
+  const nonzeros = parts.reduce((sum, a) => sum + a.values.length, 0);
+  const colStart = new Int32Array(cols + 1);
+  const rowIndex = new Int32Array(nonzeros);
+  const values = new Float64Array(nonzeros);
+  let col = 0;
+  let end = 0;
+  parts.forEach((a, k) => {
+    rowIndex.set(a.rowIndex, end);
+    for (let p = 0; p < a.values.length; p++) values[end + p] = factors[k] * a.values[p];
+    for (let j = 0; j < a.cols; j++) colStart[col + j + 1] = end + a.colStart[j + 1];
+    col += a.cols;
+    end += a.values.length;
+  });
+  return { rows, cols, colStart, rowIndex, values };
+}

@@ -1,0 +1,146 @@
+import type { ModelState } from "../model/parametric-model.js";
+import type { AdaptiveModel } from "../reduction/adaptive-model.js";
+import { inBand } from "./band.js";
+import type { Setting } from "./measure.js";
+import { type NearbyEigenvalue, type Neighbourhood, nearbyEigenvalues } from "./nearby-eigenvalues.js";
+import { dampingRatio, isUnstable } from "./stability.js";
+
+/** An eigenvalue with Im ≥ 0 [1/s, rad/s]. */
+export interface Eigenvalue {
+  readonly re: number;
+  readonly im: number;
+}
+
+/** The stability of the unperturbed model at one point, decided by eigenvalues of the full model. */
+export interface StabilityVerdict {
+  /** Right of the axis inside the band, conjugate pairs counted as two. */
+  readonly unstable: number;
+  /** The same outside the band, up to 1.3 times its upper end and at zero. */
+  readonly unstableOutside: number;
+  /** Eigenvalues on the axis within rounding, inside the band. */
+  readonly onAxis: number;
+  /** Largest real part in the band [1/s]; −Infinity when the band holds no eigenvalue. */
+  readonly abscissa: number;
+  /** Least damped eigenvalues in the band, least damped first. */
+  readonly leastDamped: readonly Eigenvalue[];
+  /** Full-model eigenvalues that are unstable though the reduced model had not seen them so. */
+  readonly missed: readonly NearbyEigenvalue[];
+  /** Suspects (unstable or ζ < 1e-3) confirmed or refuted by the full model, and those left open. */
+  readonly examined: number;
+  readonly open: number;
+}
+
+const suspicious = 1e-3;
+/** Unstable modes just outside the band are common: they are looked for up to here. */
+export const outsideReach = 1.3;
+const mostShifts = 60;
+
+/**
+ * Confirms or refutes every reduced eigenvalue that is unstable or nearly so (ζ < 1e-3) by
+ * shift-and-invert Arnoldi on the full model. Neighbours come along, so that what the reduced model
+ * missed near a suspect is found too.
+ */
+export function judgeStability(
+  adaptive: AdaptiveModel,
+  state: ModelState,
+  setting: Setting,
+  reduced: { readonly re: Float64Array; readonly im: Float64Array },
+): StabilityVerdict {
+  const reach = outsideReach * setting.band.high;
+  const all: Eigenvalue[] = Array.from(reduced.re, (re, j) => ({ re, im: reduced.im[j] })).filter(
+    ({ im }) => im <= reach,
+  );
+  if (adaptive.exact) return verdictOf(all, [], setting, all.filter(isSuspect(setting)).length, 0);
+  const suspects = all.filter(isSuspect(setting)).sort((a, b) => a.im - b.im);
+  const { neighbourhoods, open } = coverSuspects(adaptive, state, setting, suspects);
+  const found = distinctEigenvalues(neighbourhoods);
+  const rest = all.filter((value) => !neighbourhoods.some((area) => covers(area, value)));
+  const missed = found.filter(
+    (value) => isUnstable(value.re, value.im, setting.shift) && !all.some((known) => close(known, value)),
+  );
+  return verdictOf([...found, ...rest], missed, setting, suspects.length, open.length);
+}
+
+function isSuspect(setting: Setting): (value: Eigenvalue) => boolean {
+  return ({ re, im }) => isUnstable(re, im, setting.shift) || dampingRatio(re, im) < suspicious;
+}
+
+/** Arnoldi runs along the axis until every suspect lies inside an examined disc. */
+function coverSuspects(
+  adaptive: AdaptiveModel,
+  state: ModelState,
+  setting: Setting,
+  suspects: readonly Eigenvalue[],
+): { neighbourhoods: Neighbourhood[]; open: Eigenvalue[] } {
+  const pencil = adaptive.full.pencilAt(state);
+  const neighbourhoods: Neighbourhood[] = [];
+  const open: Eigenvalue[] = [];
+  const examine = (re: number, im: number) => {
+    const area = nearbyEigenvalues(pencil, pencil.factor(re, im), setting.shift, neighbourhoods.length + 1);
+    neighbourhoods.push(area);
+    return area.radius;
+  };
+  let stride = 0;
+  for (const suspect of suspects) {
+    const covered = () => neighbourhoods.some((area) => covers(area, suspect));
+    if (covered()) continue;
+    if (neighbourhoods.length >= mostShifts) {
+      open.push(suspect);
+      continue;
+    }
+    // A little beyond the suspect, so that the next ones fall into the same disc.
+    const ahead = Number.isFinite(stride) ? 0.7 * stride : 0;
+    stride = examine(0, suspect.im + Math.max(ahead, 1e-3 * Math.max(suspect.im, 1e-2 * setting.shift)));
+    if (!covered()) examine(suspect.re, suspect.im * (1 + 1e-5) + 1e-6 * setting.shift);
+    if (!covered()) open.push(suspect);
+  }
+  return { neighbourhoods, open };
+}
+
+function verdictOf(
+  eigenvalues: readonly Eigenvalue[],
+  missed: readonly NearbyEigenvalue[],
+  setting: Setting,
+  examined: number,
+  open: number,
+): StabilityVerdict {
+  const { band, shift } = setting;
+  const inside = eigenvalues.filter(({ im }) => inBand(band, im));
+  const outside = eigenvalues.filter(({ im }) => !inBand(band, im));
+  const count = (list: readonly Eigenvalue[]) =>
+    list.reduce((sum, { re, im }) => sum + (isUnstable(re, im, shift) ? (im > 0 ? 2 : 1) : 0), 0);
+  const byDamping = [...inside].sort((a, b) => dampingRatio(a.re, a.im) - dampingRatio(b.re, b.im));
+  return {
+    unstable: count(inside),
+    unstableOutside: count(outside),
+    onAxis: inside.filter(({ re, im }) => Math.abs(re) <= 1e-10 * Math.max(im, 1e-3 * shift)).length,
+    abscissa: inside.reduce((high, { re }) => Math.max(high, re), Number.NEGATIVE_INFINITY),
+    leastDamped: byDamping.slice(0, 10).map(({ re, im }) => ({ re, im })),
+    missed,
+    examined,
+    open,
+  };
+}
+
+function covers(area: Neighbourhood, { re, im }: Eigenvalue): boolean {
+  return Math.hypot(re - area.shiftRe, im - area.shiftIm) < area.radius;
+}
+
+function close(a: Eigenvalue, b: Eigenvalue): boolean {
+  return Math.hypot(a.re - b.re, a.im - b.im) <= 1e-3 * Math.hypot(a.re, a.im);
+}
+
+/** Eigenvalues of all discs with Im ≥ 0, each once. */
+function distinctEigenvalues(neighbourhoods: readonly Neighbourhood[]): NearbyEigenvalue[] {
+  const kept: NearbyEigenvalue[] = [];
+  for (const area of neighbourhoods) {
+    const fresh = area.eigenvalues.filter((value) => {
+      const tolerance = 1e-7 * Math.hypot(value.re, value.im);
+      const same = (other: NearbyEigenvalue) =>
+        Math.hypot(other.re - value.re, other.im - value.im) <= tolerance;
+      return value.im >= 0 && covers(area, value) && !kept.some(same);
+    });
+    kept.push(...fresh);
+  }
+  return kept;
+}

@@ -1,0 +1,54 @@
+import type { Pencil } from "../model/pencil.js";
+import type { ComplexVector } from "../numerics/dense/matrix.js";
+import type { DensePencil } from "../reduction/reduced-model.js";
+import { channelGain } from "./channel-gain.js";
+import {
+  type Checked,
+  type Critical,
+  type Estimate,
+  type Measure,
+  realDirections,
+  type Setting,
+} from "./measure.js";
+import { findPeaks, peakDefaults } from "./peaks.js";
+import { spectralForm } from "./spectral-form.js";
+import { checkEigenvalue, unstableCriticals, upperHalf } from "./stability.js";
+
+function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Setting): Estimate {
+  const form = spectralForm(pencilAt(1), setting.shift);
+  const eigenvalues = upperHalf(form.eigen);
+  const unstable = unstableCriticals(form.eigen, setting);
+  if (unstable.length > 0) return { value: unstable[0].value, criticals: unstable, eigenvalues };
+  const criticals = findPeaks(form, setting.band, { ...peakDefaults, extra: setting.hints })
+    .filter((peak) => peak.sigma > 0)
+    .map(({ omega, sigma }) => ({ kind: "peak" as const, value: 1 / sigma, omega, sigma }));
+  return { value: criticals[0]?.value ?? Number.POSITIVE_INFINITY, criticals, eigenvalues };
+}
+
+function check(
+  pencilAt: (multiplier: number) => Pencil,
+  critical: Critical,
+  lift: (reduced: ComplexVector) => ComplexVector,
+  setting: Setting,
+): Checked {
+  const pencil = pencilAt(1);
+  if (critical.kind !== "peak")
+    return checkEigenvalue(pencil, critical, lift, (re) => -re / setting.omegaRef);
+  const gain = channelGain(pencil, pencil.factor(0, critical.omega));
+  return {
+    value: 1 / gain.sigma,
+    omega: critical.omega,
+    error: gain.backwardError,
+    converged: Number.isFinite(gain.sigma),
+    directions: realDirections(gain.x, gain.y),
+    found: { kind: "peak", gain },
+  };
+}
+
+/**
+ * Complex stability radius r = 1 / sup_ω σ_max(H(iω)) of the stacked block; where the model is
+ * unstable in the band, minus its growth −max Re s / ω_ref, which a search can climb through zero.
+ *
+ * Source: Hinrichsen & Pritchard, Systems & Control Letters 7 and 8 (1986).
+ */
+export const radius: Measure = { name: "radius", estimate, check };

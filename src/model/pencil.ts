@@ -1,0 +1,118 @@
+import type { ComplexMatrix, ComplexVector } from "../numerics/dense/matrix.js";
+import { complexVector } from "../numerics/dense/matrix.js";
+import type { RealOperator } from "../numerics/real-operator.js";
+
+/** P(s) factored at one s. Both solves overwrite their argument (n×k). */
+export interface PencilFactor {
+  readonly sRe: number;
+  readonly sIm: number;
+  /** b ← P(s)⁻¹ b. Returns the worst backward error. */
+  solveInPlace(b: ComplexMatrix): number;
+  /** b ← P(s)⁻ᴴ b. Returns the worst backward error. */
+  solveAdjointInPlace(b: ComplexMatrix): number;
+}
+
+/**
+ * P(s) = s²M + sC + S at one state, with the channels through which model errors enter:
+ *
+ *     P(s) + B diag(s^k) Δ C,      H(s) = C P(s)⁻¹ B diag(s^k)
+ *
+ * M is the mass; C (`velocity`) is D + G + F; S (`displacement`) is K + N. Full and reduced
+ * models both come as pencils, so the margins cannot tell which they hold.
+ */
+export interface Pencil {
+  readonly order: number;
+  readonly mass: RealOperator;
+  readonly velocity: RealOperator;
+  readonly displacement: RealOperator;
+  /** B, n×m. */
+  readonly input: RealOperator;
+  /** k of each column of B. */
+  readonly powers: Uint8Array;
+  /** Cᵀ, n×p. */
+  readonly outputTransposed: RealOperator;
+  factor(sRe: number, sIm: number): PencilFactor;
+}
+
+/** y = P(s) x, a new vector. */
+export function applyPencil(pencil: Pencil, sRe: number, sIm: number, x: ComplexVector): ComplexVector {
+  return combine(pencil, sRe * sRe - sIm * sIm, 2 * sRe * sIm, sRe, sIm, 1, x);
+}
+
+/** y = P(s)ᴴ x, a new vector. */
+export function applyPencilAdjoint(
+  pencil: Pencil,
+  sRe: number,
+  sIm: number,
+  x: ComplexVector,
+): ComplexVector {
+  const y = complexVector(pencil.order);
+  addAdjointScaled(y, pencil.mass, sRe * sRe - sIm * sIm, -2 * sRe * sIm, x);
+  addAdjointScaled(y, pencil.velocity, sRe, -sIm, x);
+  addAdjointScaled(y, pencil.displacement, 1, 0, x);
+  return y;
+}
+
+/** y = P′(s) x = (2sM + C) x, a new vector. */
+export function applyPencilDerivative(
+  pencil: Pencil,
+  sRe: number,
+  sIm: number,
+  x: ComplexVector,
+): ComplexVector {
+  return combine(pencil, 2 * sRe, 2 * sIm, 1, 0, 0, x);
+}
+
+/** Upper bound of ‖P(s)‖₂ from norms of its three matrices. */
+export function pencilNorm(pencil: Pencil, sRe: number, sIm: number): number {
+  const size = Math.hypot(sRe, sIm);
+  const { mass, velocity, displacement } = pencil;
+  return size * size * mass.normBound + size * velocity.normBound + displacement.normBound;
+}
+
+/** (a M + b C + c S) x with complex a, b and real c. */
+function combine(
+  pencil: Pencil,
+  aRe: number,
+  aIm: number,
+  bRe: number,
+  bIm: number,
+  c: number,
+  x: ComplexVector,
+): ComplexVector {
+  const y = complexVector(pencil.order);
+  addComplexScaled(y, pencil.mass, aRe, aIm, x);
+  addComplexScaled(y, pencil.velocity, bRe, bIm, x);
+  if (c !== 0) addComplexScaled(y, pencil.displacement, c, 0, x);
+  return y;
+}
+
+function addComplexScaled(
+  y: ComplexVector,
+  a: RealOperator,
+  cRe: number,
+  cIm: number,
+  x: ComplexVector,
+): void {
+  a.addInto(y.re, cRe, x.re);
+  a.addInto(y.im, cRe, x.im);
+  if (cIm !== 0) {
+    a.addInto(y.re, -cIm, x.im);
+    a.addInto(y.im, cIm, x.re);
+  }
+}
+
+function addAdjointScaled(
+  y: ComplexVector,
+  a: RealOperator,
+  cRe: number,
+  cIm: number,
+  x: ComplexVector,
+): void {
+  a.addTransposedInto(y.re, cRe, x.re);
+  a.addTransposedInto(y.im, cRe, x.im);
+  if (cIm !== 0) {
+    a.addTransposedInto(y.re, -cIm, x.im);
+    a.addTransposedInto(y.im, cIm, x.re);
+  }
+}

@@ -1,0 +1,49 @@
+import type { ComplexVector } from "./matrix.js";
+
+/** Euclidean norm, scaled against overflow only by the range of doubles. */
+export function norm2(x: ComplexVector): number {
+  const { re, im } = x;
+  let sum = 0;
+  for (let i = 0; i < re.length; i++) sum += re[i] * re[i] + im[i] * im[i];
+  return Math.sqrt(sum);
+}
+
+/** The two parts of yᴴ x. */
+export function innerProduct(y: ComplexVector, x: ComplexVector): { re: number; im: number } {
+  let re = 0;
+  let im = 0;
+  for (let i = 0; i < x.re.length; i++) {
+    re += y.re[i] * x.re[i] + y.im[i] * x.im[i];
+    im += y.re[i] * x.im[i] - y.im[i] * x.re[i];
+  }
+  return { re, im };
+}
+
+/** x ← (cRe + i cIm) x. */
+export function scaleInPlace(x: ComplexVector, cRe: number, cIm: number): void {
+  const { re, im } = x;
+  for (let i = 0; i < re.length; i++) {
+    const a = re[i];
+    re[i] = cRe * a - cIm * im[i];
+    im[i] = cRe * im[i] + cIm * a;
+  }
+}
+
+/** y ← y + (cRe + i cIm) x. */
+export function addScaledInto(y: ComplexVector, cRe: number, cIm: number, x: ComplexVector): void {
+  for (let i = 0; i < x.re.length; i++) {
+    y.re[i] += cRe * x.re[i] - cIm * x.im[i];
+    y.im[i] += cRe * x.im[i] + cIm * x.re[i];
+  }
+}
+
+export function copyOf(x: ComplexVector): ComplexVector {
+  return { re: x.re.slice(), im: x.im.slice() };
+}
+
+/** x ← x / ‖x‖₂; a zero vector stays zero. Returns the norm it had. */
+export function normaliseInPlace(x: ComplexVector): number {
+  const norm = norm2(x);
+  if (norm > 0) scaleInPlace(x, 1 / norm, 0);
+  return norm;
+}
