@@ -1,0 +1,160 @@
+import { createRandom } from "../../src/numerics/random.js";
+import { fromTriplets, type SparseMatrix } from "../../src/numerics/sparse/sparse-matrix.js";
+
+/** Uniform numbers in [0, 1), the same for the same seed. */
+export function uniform(seed: number): () => number {
+  const random = createRandom(seed);
+  return () => random.uniform();
+}
+
+/** A structurally symmetric matrix with full diagonal in the pattern; complex parts on one pattern. */
+export interface SparseCase {
+  readonly name: string;
+  readonly a: SparseMatrix;
+  readonly im: Float64Array;
+}
+
+type Entries = Map<number, [number, number]>;
+
+/** Values for the pairs (i, j) and (j, i), symmetric when asked; zero diagonals stay in the pattern. */
+function build(
+  name: string,
+  n: number,
+  edges: readonly (readonly [number, number])[],
+  zeroDiagonal: (i: number) => boolean,
+  scaleOf: (i: number) => number,
+  random: () => number,
+  symmetric: boolean,
+): SparseCase {
+  const entries: Entries = new Map();
+  const draw = (): [number, number] => [2 * random() - 1, symmetric ? 0 : 2 * random() - 1];
+  for (let i = 0; i < n; i++) entries.set(i + i * n, zeroDiagonal(i) ? [0, 0] : draw());
+  for (const [i, j] of edges) {
+    if (i === j) continue;
+    const value = draw();
+    entries.set(i + j * n, value);
+    entries.set(j + i * n, symmetric ? value : draw());
+  }
+  const rows: number[] = [];
+  const cols: number[] = [];
+  const re: number[] = [];
+  const im: number[] = [];
+  for (const [key, [x, y]] of entries) {
+    const i = key % n;
+    const j = Math.floor(key / n);
+    rows.push(i);
+    cols.push(j);
+    re.push(x * scaleOf(i) * scaleOf(j));
+    im.push(y * scaleOf(i) * scaleOf(j));
+  }
+  const a = fromTriplets(n, n, rows, cols, re);
+  return { name, a, im: fromTriplets(n, n, rows, cols, im).values };
+}
+
+/** Awkward structures of order up to 45: chains, constraints, arrows, loose parts, wild scales, zero diagonals. */
+export function awkwardCase(seed: number, symmetric: boolean): SparseCase {
+  const random = uniform(seed);
+  const n = seed % 23 === 0 ? 1 : 2 + Math.floor(random() * 44);
+  const pick = (): number => Math.floor(random() * n);
+  const some = Array.from({ length: 2 * n }, () => [pick(), pick()] as const);
+  const chain = Array.from({ length: n - 1 }, (_, i) => [i, i + 1] as const);
+  const one = (): number => 1;
+  const never = (): boolean => false;
+  const wild = Array.from({ length: n }, () => 10 ** (12 * random() - 6));
+  switch (seed % 7) {
+    case 0:
+      return build("scattered", n, some, never, one, random, symmetric);
+    case 1:
+      return build("scales 1e-12 to 1e12", n, some, never, (i) => wild[i]!, random, symmetric);
+    case 2: {
+      // [K Gᵀ; G 0] with fewer constraints than dofs and every constraint on two dofs of its own.
+      const free = Math.ceil((2 * n) / 3);
+      const constraints = Array.from({ length: n - free }, (_, c) => [free + c, 2 * c] as const);
+      const more = Array.from(
+        { length: n - free },
+        (_, c) => [free + c, Math.min(2 * c + 1, free - 1)] as const,
+      );
+      const inside = chain.filter(([, j]) => j < free);
+      return build(
+        "constraints",
+        n,
+        [...inside, ...constraints, ...more],
+        (i) => i >= free,
+        one,
+        random,
+        symmetric,
+      );
+    }
+    case 3: {
+      const arrow = Array.from({ length: n - 1 }, (_, i) => [0, i + 1] as const);
+      return build("arrow", n, arrow, never, one, random, symmetric);
+    }
+    case 4:
+      return build(
+        "disconnected",
+        n,
+        some.filter(([i, j]) => i % 3 === j % 3),
+        never,
+        one,
+        random,
+        symmetric,
+      );
+    case 5:
+      // An even chain without diagonal has one perfect matching, hence det ≠ 0.
+      return build(
+        "zero diagonal",
+        n + (n % 2),
+        n % 2 === 0 ? chain : [...chain, [n - 1, n]],
+        () => true,
+        one,
+        random,
+        symmetric,
+      );
+    default: {
+      const all = Array.from({ length: n * n }, (_, t) => [t % n, Math.floor(t / n)] as const);
+      return build(
+        "dense with half the diagonal zero",
+        n,
+        all,
+        (i) => n > 1 && i % 2 === 0,
+        one,
+        random,
+        symmetric,
+      );
+    }
+  }
+}
+
+/**
+ * A grid of square four-node elements with three dofs per node, one of them 10⁵ times stiffer,
+ * and unsymmetric imaginary values; symmetric real part K − shift.
+ */
+export function plateCase(side: number, seed: number): SparseCase & { readonly groups: Int32Array } {
+  const random = uniform(seed);
+  const stiffness = [1e5, 1, 1];
+  const rows: number[] = [];
+  const cols: number[] = [];
+  const re: number[] = [];
+  const im: number[] = [];
+  for (let x = 0; x + 1 < side; x++) {
+    for (let y = 0; y + 1 < side; y++) {
+      const dofs = [0, 1, side, side + 1].flatMap((d) => [0, 1, 2].map((k) => 3 * (x * side + y + d) + k));
+      const factor = Array.from({ length: 12 * 11 }, () => random() - 0.5);
+      for (let i = 0; i < 12; i++) {
+        for (let j = 0; j < 12; j++) {
+          let k = i === j ? -0.05 : 0;
+          for (let p = 0; p < 11; p++) k += factor[11 * i + p]! * factor[11 * j + p]!;
+          const scale = stiffness[i % 3]! * stiffness[j % 3]!;
+          rows.push(dofs[i]!);
+          cols.push(dofs[j]!);
+          re.push(k * scale);
+          im.push((0.05 * k + 0.06 * (random() - 0.5)) * scale);
+        }
+      }
+    }
+  }
+  const n = 3 * side * side;
+  const a = fromTriplets(n, n, rows, cols, re);
+  const groups = Int32Array.from({ length: n }, (_, i) => Math.floor(i / 3));
+  return { name: "plate", a, im: fromTriplets(n, n, rows, cols, im).values, groups };
+}
