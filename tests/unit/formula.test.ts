@@ -178,6 +178,7 @@ describe("refused", () => {
   it("is nothing that 100 levels and 2000 characters allow", () => {
     expect(formula(`${"(".repeat(100)}x${")".repeat(100)}`).evaluate(at({ x: 7 }))).toBe(7);
     expect(formula(`x${"+x".repeat(999)}`).evaluate(at({ x: 1 }))).toBe(1000);
+    expect(formula(`x${"+(x)".repeat(150)}`).evaluate(at({ x: 1 }))).toBe(151);
     expect(formula(`x${"^x".repeat(999)}`).evaluate(at({ x: 1 }))).toBe(1);
   });
 

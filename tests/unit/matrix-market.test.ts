@@ -263,6 +263,13 @@ describe("the Matrix Market writer", () => {
     if (sign === 0) expect(b.value).toEqual(a.value);
   });
 
+  it("keeps the sign of zero and the ends of the range", async () => {
+    const value = Float64Array.of(-0, 0, 5e-324, -1.7976931348623157e308, 1 / 3, 1e21);
+    const place = new Int32Array(6);
+    await writeMatrixMarket(join(folder, "f.mtx"), { rows: 1, cols: 1, row: place, col: place, value });
+    expect((await readMatrixMarket(join(folder, "f.mtx"))).value).toEqual(value);
+  });
+
   it("will not write an unsymmetric matrix as symmetric", async () => {
     await expect(writeMatrixMarket(join(folder, "e.mtx"), matrix(4, 0), "symmetric")).rejects.toThrow(
       "invariant",

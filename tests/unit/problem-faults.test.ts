@@ -256,7 +256,11 @@ describe("one fault of a problem file is told with code and place:", () => {
     ["a label of two lines", withTerm({ matrix: "K", name: "a\nb" }), "value /terms/damping/0/name"],
     ["a list for a file", [], "type"],
     ["text that is no JSON", '{\n  "a": 1,\n}', "json-syntax"],
-    ["bytes that are no UTF-8", Buffer.from([0x7b, 0xff, 0x7d]), "json-syntax"],
+    [
+      "bytes that are no UTF-8",
+      Buffer.from(JSON.stringify({ ...base, title: "\u00e9" }), "latin1"),
+      "json-syntax",
+    ],
   ];
   it.each(cases)("%s", async (_, content, expected) => {
     const places = await placesOf(content);
@@ -288,7 +292,7 @@ describe("the faults of a problem file", () => {
       titel: "x",
       matrices: { ...base.matrices, bad: { file: "bad.mtx" }, gone: { file: "gone.mtx" }, form: { fil: 1 } },
       constants: { density: "heavy" },
-      design: { layer: { range: [0, 1], start: 3 } },
+      design: { layer: { range: [0, 1], start: 3, stp: 1 } },
       terms: {
         mass: [{ matrix: "N" }, { matrix: "M", factor: "densty*layr" }, { matrx: "M" }],
         gyroscopic: [{ matrix: "K" }],
@@ -298,6 +302,7 @@ describe("the faults of a problem file", () => {
     expect(places.sort()).toEqual(
       [
         "unknown-key /titel",
+        "unknown-key /design/layer/stp",
         "type /constants/density",
         "type /matrices/form",
         "missing-key /terms/mass/2",
@@ -324,7 +329,10 @@ describe("the faults of a problem file", () => {
         matrices: { ...base.matrices, K: { file: "gone.mtx" }, P: { fil: 3 } },
         design: { a: { range: [0], start: 1 } },
         terms: { mass: [{ matrix: "M", factor: "a" }], stiffness: [{ matrix: "K" }, { matrix: "P" }] },
-        perturbations: [{ acts: "stiffnes", kind: "real", left: "P", right: "K" }],
+        perturbations: [
+          { acts: "stiffnes", kind: "real", left: "P", right: "K" },
+          { acts: "stiffness", kind: "real", left: "P", right: "K.right" },
+        ],
         margin: { measure: "radius" },
       }),
     ).toEqual(
@@ -335,6 +343,14 @@ describe("the faults of a problem file", () => {
         "file-missing /matrices/K/file",
       ].map((p) => expect.stringContaining(p)),
     );
+  });
+
+  it("of size name the term that is not square, not the others", async () => {
+    const matrices = { W: { file: "wide.mtx" }, S: { file: "square4.mtx" } };
+    const terms = { mass: [{ matrix: "W" }], stiffness: [{ matrix: "S" }] };
+    expect(await placesOf({ ...base, dofs: undefined, matrices, terms })).toEqual([
+      "input.matrix-shape /terms/mass/0/matrix",
+    ]);
   });
 
   it("name what was probably meant", async () => {
