@@ -55,20 +55,21 @@ export function auditRadius(
 
 /**
  * Compares eigenvalues of full and reduced model around shifts spread over the band. Only those that could
- * decide (value at most twice the margin's) count as disagreement.
+ * decide (decay at most `value + scale`) count as disagreement, which is measured in units of `scale`: the
+ * decay that stands for the whole margin.
  */
 export function auditEigenvalues(
   adaptive: AdaptiveModel,
   state: ModelState,
   setting: Setting,
   kind: DecayKind,
-  value: number,
+  { value, scale }: { readonly value: number; readonly scale: number },
   reduced: { readonly re: Float64Array; readonly im: Float64Array },
 ): Audit {
   const poles = Array.from(reduced.im).filter((im) => inBand(setting.band, im));
   const frequencies = auditFrequencies(setting, [], [], poles, leastEvaluations);
   const pencil = adaptive.full.pencilAt(state);
-  const bound = value + Math.abs(value);
+  const bound = value + scale;
   let worst = 0;
   let surprised = false;
   const directions: Float64Array[] = [];
@@ -78,10 +79,9 @@ export function auditEigenvalues(
       const full = decayOf(kind, re, im);
       if (im < 0 || !inBand(setting.band, im) || !(full <= bound)) continue;
       const j = nearestIndex(reduced, re, im);
-      const disagreement =
-        Math.abs(full - decayOf(kind, reduced.re[j], reduced.im[j])) / Math.max(Math.abs(value), 1e-300);
+      const disagreement = Math.abs(full - decayOf(kind, reduced.re[j], reduced.im[j])) / scale;
       worst = Math.max(worst, disagreement);
-      if (full < value - 1e-6 * Math.abs(value)) surprised = true;
+      if (full < value - 1e-6 * scale) surprised = true;
       if (disagreement > 1e-6) directions.push(right.re, right.im);
     }
   });

@@ -6,7 +6,7 @@ import { type Audit, auditEigenvalues, auditRadius } from "./audit.js";
 import { bandOf } from "./band.js";
 import { decay } from "./decay.js";
 import { judgeStability, type StabilityVerdict } from "./full-stability.js";
-import { type Checked, type Measure, type Setting } from "./measure.js";
+import type { Checked, Measure, Setting } from "./measure.js";
 import { missedPeaks } from "./missed-peaks.js";
 import { multiplier } from "./multiplier.js";
 import { radius } from "./radius.js";
@@ -122,9 +122,10 @@ function auditOf(
   }
   // Of a multiplier the audit looks at the model just where it is said to lose stability.
   const state = states(measure.name === "multiplier" && Number.isFinite(value) ? value : 1);
-  const reduced = reducedEigenvalues(adaptive, state, setting);
-  const rate = decay("rate").estimate(() => adaptive.reducedAt(state), setting).value;
-  return auditEigenvalues(adaptive, state, setting, "rate", rate, reduced);
+  const { value: slowest, eigenvalues } = decay("rate").estimate(() => adaptive.reducedAt(state), setting);
+  const drift = decisive?.found.kind === "crossing" ? Math.abs(decisive.found.crossing.drift * value) : 0;
+  const scale = Math.max(Math.abs(slowest), drift, 1e-9 * setting.shift);
+  return auditEigenvalues(adaptive, state, setting, "rate", { value: slowest, scale }, eigenvalues);
 }
 
 function assemble(

@@ -1,0 +1,124 @@
+import type { Critical } from "../margin/measure.js";
+import { type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
+import type { Session } from "./session.js";
+
+/** A design as the reduced model sees it. */
+export interface Candidate {
+  /** Point of the unit design space. */
+  readonly x: readonly number[];
+  /** Smallest reduced margin over the operating points looked at. */
+  readonly value: number;
+}
+
+export interface ClimbOptions {
+  /** Half width of the box searched around the start, share of each range. */
+  readonly reach: number;
+  /** Designs evaluated in one solve of the epigraph problem. */
+  readonly evaluations: number;
+  /** Accuracy of the margin. */
+  readonly tolerance: number;
+  /** How often the set of active operating points is exchanged at most. */
+  readonly exchanges: number;
+  /** Indices of variables that keep their value. */
+  readonly frozen: ReadonlySet<number>;
+}
+
+export interface Climbed extends Candidate {
+  /** Operating points that were active in the end. */
+  readonly active: readonly ReadonlyMap<string, number>[];
+}
+
+/** Competing peaks followed at each operating point; the rest goes with the nearest of them. */
+const slotsPerPoint = 3;
+
+/**
+ * Local ascent of the worst margin on the reduced model: epigraph form over the active operating points and
+ * their competing peaks, then a search of the envelope, whose worst point joins the active ones,
+ * until it brings nothing new.
+ */
+export async function climb(
+  session: Session,
+  start: readonly number[],
+  active: readonly ReadonlyMap<string, number>[],
+  options: ClimbOptions,
+): Promise<Climbed> {
+  let points = [...active];
+  let x = [...start];
+  for (let exchange = 0; ; exchange++) {
+    x = await ascend(session, x, points, options);
+    const design = session.designs.valuesOf(x);
+    const known = Math.min(...points.map((at) => session.estimate(design, at).value));
+    const worst = session.worstPoints(design, points, "coarse")[0];
+    const slack = options.tolerance * Math.max(1, Math.abs(known));
+    if (worst.value >= known - slack || exchange === options.exchanges) {
+      return { x, value: Math.min(known, worst.value), active: points };
+    }
+    points = [...points.filter((at) => !near(session, at, worst.at)), worst.at];
+  }
+}
+
+async function ascend(
+  session: Session,
+  start: readonly number[],
+  points: readonly ReadonlyMap<string, number>[],
+  options: ClimbOptions,
+): Promise<number[]> {
+  const { designs } = session;
+  const first = designs.valuesOf(start);
+  const slots = points.map((at) => slotFrequencies(session.estimate(first, at).criticals));
+  const free = start.map((_, i) => i).filter((i) => !options.frozen.has(i));
+  if (free.length === 0) return [...start];
+  const spread = (z: readonly number[]) => {
+    const x = [...start];
+    free.forEach((i, k) => {
+      x[i] = z[k];
+    });
+    return x;
+  };
+  const problem: MaximinProblem = {
+    dimension: free.length,
+    pieces: slots.reduce((sum, list) => sum + list.length, 0),
+    limits: session.problem.budget.length,
+    evaluate: (z) => {
+      const x = spread(z);
+      const design = designs.valuesOf(x);
+      const pieces = points.flatMap((at, k) => {
+        const { value, criticals } = session.estimate(design, at);
+        return piecesOf(slots[k], criticals, value);
+      });
+      return { pieces, limits: designs.limitsAt(x) };
+    },
+  };
+  const result = await maximiseMinimum(problem, {
+    start: free.map((i) => start[i]),
+    reach: options.reach,
+    maximumEvaluations: options.evaluations,
+    tolerance: options.tolerance,
+  });
+  return designs.pullBack(spread(result.x), start);
+}
+
+function slotFrequencies(criticals: readonly Critical[]): number[] {
+  const chosen = criticals.slice(0, slotsPerPoint).map((critical) => critical.omega);
+  return chosen.length === 0 ? [0] : chosen;
+}
+
+/** The smallest value among the criticals nearest to each slot; a slot without any takes the largest of all. */
+function piecesOf(slots: readonly number[], criticals: readonly Critical[], value: number): number[] {
+  const pieces = new Array<number>(slots.length).fill(Number.POSITIVE_INFINITY);
+  let largest = value;
+  for (const critical of criticals) {
+    let nearest = 0;
+    slots.forEach((omega, k) => {
+      if (Math.abs(omega - critical.omega) < Math.abs(slots[nearest] - critical.omega)) nearest = k;
+    });
+    pieces[nearest] = Math.min(pieces[nearest], critical.value);
+    largest = Math.max(largest, critical.value);
+  }
+  return pieces.map((piece) => (Number.isFinite(piece) ? piece : largest));
+}
+
+function near(session: Session, a: ReadonlyMap<string, number>, b: ReadonlyMap<string, number>): boolean {
+  const [x, y] = [session.operation.unitOf(a), session.operation.unitOf(b)];
+  return x.every((xi, i) => Math.abs(xi - y[i]) < 0.05);
+}

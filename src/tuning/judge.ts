@@ -1,0 +1,117 @@
+import { marginAt, type PointMargin, statesAt } from "../margin/point-margin.js";
+import { type Settled, settle, settleDefaults } from "../margin/settle.js";
+import type { ReportProgress, Session } from "./session.js";
+
+/** Another operating point that the full model was asked about. */
+export interface EnvelopeCheck {
+  readonly at: ReadonlyMap<string, number>;
+  readonly value: number;
+}
+
+/** The smallest margin of one design over the envelope, settled on the full model. */
+export interface Judgement {
+  readonly at: ReadonlyMap<string, number>;
+  readonly point: PointMargin;
+  /** Full-model margins at other operating points, worst first. */
+  readonly envelope: readonly EnvelopeCheck[];
+  readonly doubts: readonly string[];
+}
+
+const mostRounds = 8;
+
+/**
+ * Judges a design: worst operating point by the reduced model, settled on the full model and learnt from, until the worst
+ * point stands still; then evidence there and full-model checks at the other low points and corners of the envelope.
+ *
+ * @param fixed - the operating point to judge at; undefined searches the envelope.
+ */
+export function judge(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  fixed: ReadonlyMap<string, number> | undefined,
+  known: readonly ReadonlyMap<string, number>[],
+  progress: ReportProgress,
+): Judgement {
+  const { adaptive, measure, setting } = session;
+  let checks: EnvelopeCheck[] = [];
+  for (let round = 0; ; round++) {
+    progress({ stage: "settling the worst operating point", done: round, total: null });
+    const at = fixed ?? settledWorst(session, design, [...known, ...checks.map((check) => check.at)]).at;
+    progress({ stage: "gathering evidence", done: round, total: null });
+    const point = marginAt(adaptive, measure, session.valuesAt(design, at), setting);
+    if (fixed !== undefined) return { at, point, envelope: [], doubts: point.doubts };
+    progress({ stage: "checking the envelope", done: round, total: null });
+    checks = checkEnvelope(session, design, at);
+    const slack = 1e-6 * Math.max(1, Math.abs(point.value));
+    const worse = checks.some((check) => check.value < point.value - slack);
+    if (!worse || round === mostRounds) {
+      const doubts = worse
+        ? [...point.doubts, "a lower margin was met elsewhere in the envelope"]
+        : point.doubts;
+      return { at, point, envelope: checks, doubts };
+    }
+  }
+}
+
+/** Full-model margin at one operating point, with the loop's loose tolerance: `rough` for rounds of a search. */
+export function settleAt(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  at: ReadonlyMap<string, number>,
+  tolerance: number,
+): Settled {
+  const states = statesAt(session.model, session.valuesAt(design, at));
+  return settle(session.adaptive, session.measure, states, session.setting, { ...settleDefaults, tolerance });
+}
+
+/** Worst operating point on which the reduced and the full model agree. */
+export function settledWorst(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  known: readonly ReadonlyMap<string, number>[],
+  tolerance = 1e-6,
+): EnvelopeCheck {
+  let best: EnvelopeCheck | undefined;
+  for (let round = 0; round < mostRounds; round++) {
+    const found = session.worstPoints(design, best === undefined ? known : [...known, best.at], "fine")[0];
+    const slack = tolerance * Math.max(1, Math.abs(found.value));
+    if (best !== undefined && found.value >= best.value - slack) break;
+    const { value } = settleAt(session, design, found.at, tolerance);
+    if (best === undefined || value < best.value) best = { at: found.at, value };
+    if (Math.abs(value - found.value) <= slack) break;
+  }
+  if (best === undefined) throw new Error("the search over the envelope made no round");
+  return best;
+}
+
+/** Full-model margins at the reduced model's other low points and at up to four corners. */
+function checkEnvelope(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  worst: ReadonlyMap<string, number>,
+): EnvelopeCheck[] {
+  if (session.operation.parameters.length === 0) return [];
+  const low = session.worstPoints(design, [], "fine").map((point) => point.at);
+  const corners = session.operation.corners.map((x) => session.operation.valuesOf(x));
+  const ranked = corners
+    .map((at) => ({ at, value: session.estimate(design, at).value }))
+    .sort((a, b) => a.value - b.value)
+    .slice(0, 4)
+    .map(({ at }) => at);
+  const chosen: ReadonlyMap<string, number>[] = [];
+  for (const at of [...low, ...ranked]) {
+    if ([worst, ...chosen].every((other) => !samePoint(session, at, other))) chosen.push(at);
+  }
+  return chosen
+    .map((at) => ({ at, value: settleAt(session, design, at, 1e-4).value }))
+    .sort((a, b) => a.value - b.value);
+}
+
+function samePoint(
+  session: Session,
+  a: ReadonlyMap<string, number>,
+  b: ReadonlyMap<string, number>,
+): boolean {
+  const [x, y] = [session.operation.unitOf(a), session.operation.unitOf(b)];
+  return x.every((xi, i) => Math.abs(xi - y[i]) < 1e-3);
+}

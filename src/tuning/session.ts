@@ -1,0 +1,91 @@
+import { FullModel } from "../fullorder/full-model.js";
+import type { Estimate, Measure, Setting } from "../margin/measure.js";
+import { measureOf, settingOf, statesAt } from "../margin/point-margin.js";
+import { buildModel, type ParametricModel, stateAt, type Values } from "../model/parametric-model.js";
+import type { Problem, TermGroup } from "../problem/problem.js";
+import { AdaptiveModel } from "../reduction/adaptive-model.js";
+import { DesignSpace } from "./design-space.js";
+import { type OperatingPoint, OperatingSpace } from "./operating-space.js";
+
+/** What a command tells while it works. */
+export interface Progress {
+  readonly stage: string;
+  readonly done: number;
+  /** null when unknown. */
+  readonly total: number | null;
+}
+
+export type ReportProgress = (progress: Progress) => void;
+
+/** One problem being worked on: its model, the reduced model that learns from it, and its two spaces. */
+export class Session {
+  readonly problem: Problem;
+  readonly model: ParametricModel;
+  readonly adaptive: AdaptiveModel;
+  readonly measure: Measure;
+  readonly setting: Setting;
+  readonly designs: DesignSpace;
+  readonly operation: OperatingSpace;
+  reducedEvaluations = 0;
+
+  /** @param design - the design at which the start basis is made. */
+  constructor(problem: Problem, design: ReadonlyMap<string, number>) {
+    this.problem = problem;
+    this.model = buildModel(problem);
+    this.designs = new DesignSpace(problem);
+    this.operation = new OperatingSpace(problem);
+    const full = new FullModel(this.model);
+    const nominal = this.valuesAt(design, this.operation.nominal);
+    const upper = problem.margin.bandHz === null ? null : 2 * Math.PI * problem.margin.bandHz[1];
+    this.adaptive = new AdaptiveModel(full, stateAt(this.model, nominal), upper);
+    this.measure = measureOf(problem.margin);
+    this.setting = settingOf(problem.margin, this.adaptive);
+  }
+
+  valuesAt(design: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>): Values {
+    return new Map([...this.problem.constants, ...design, ...at]);
+  }
+
+  /** The reduced model's word at one design and operating point. */
+  estimate(design: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>): Estimate {
+    this.reducedEvaluations++;
+    const states = statesAt(this.model, this.valuesAt(design, at));
+    return this.measure.estimate((multiplier) => this.adaptive.reducedAt(states(multiplier)), this.setting);
+  }
+
+  /** Worst operating points of a design by the reduced model, worst first. */
+  worstPoints(
+    design: ReadonlyMap<string, number>,
+    known: readonly ReadonlyMap<string, number>[],
+    resolution: "coarse" | "fine",
+  ): OperatingPoint[] {
+    return this.operation.search((at) => this.estimate(design, at).value, known, resolution);
+  }
+
+  /**
+   * Real modes at extremes of the parameters that change mass or stiffness: all operating ones low or high,
+   * and, when designs will vary, all design ones high or low against them.
+   */
+  addExtremeSamples(design: ReadonlyMap<string, number>, varyDesign: boolean): void {
+    const structural = structuralNames(this.model);
+    const moving = (names: readonly { readonly name: string }[]) =>
+      names.some(({ name }) => structural.has(name));
+    const operating = moving(this.operation.parameters) ? [0, 1] : [];
+    const designed = varyDesign && moving(this.designs.variables);
+    const fill = (space: { readonly length: number }, level: number) =>
+      new Array<number>(space.length).fill(level);
+    const at = (level: number) => this.operation.valuesOf(fill(this.operation.parameters, level));
+    const designAt = (level: number) => this.designs.valuesOf(fill(this.designs.variables, level));
+    const samples: [ReadonlyMap<string, number>, ReadonlyMap<string, number>][] = [];
+    for (const level of operating) samples.push([designed ? designAt(1 - level) : design, at(level)]);
+    if (designed) samples.push([designAt(1), operating.length > 0 ? at(1) : this.operation.nominal]);
+    for (const [d, o] of samples) this.adaptive.addSample(stateAt(this.model, this.valuesAt(d, o)));
+  }
+}
+
+function structuralNames(model: ParametricModel): Set<string> {
+  const structural: ReadonlySet<TermGroup> = new Set(["mass", "stiffness"]);
+  return new Set(
+    model.terms.filter((term) => structural.has(term.group)).flatMap((term) => term.factor.names),
+  );
+}

@@ -1,0 +1,122 @@
+import { createRandom, type Random } from "../numerics/random.js";
+import type { Candidate, ClimbOptions } from "./climb.js";
+import { type EnvelopeCheck, type Judgement, judge, settleAt } from "./judge.js";
+import { roundToSteps } from "./rounding.js";
+import { climbAll, confirmRounds, type Incumbent, type ReportBest, type RoundRecord } from "./rounds.js";
+import { screen } from "./screen.js";
+import type { ReportProgress, Session } from "./session.js";
+
+export interface TuneOptions {
+  readonly seed: number;
+  /** Agreement wanted between reduced and full margin in a round, relative to max(1, margin). */
+  readonly tolerance: number;
+  /** Designs screened before the first ascents. */
+  readonly screened: number;
+  /** Ascents in the first round. */
+  readonly starts: number;
+  /** Rounds of search and confirmation at most. */
+  readonly rounds: number;
+}
+
+export const tuneDefaults: Omit<TuneOptions, "seed" | "tolerance"> = { screened: 160, starts: 6, rounds: 8 };
+
+export interface Tuned {
+  readonly design: ReadonlyMap<string, number>;
+  readonly judgement: Judgement;
+  /** No design within the limits was found; `design` is the least violated one. */
+  readonly infeasible: boolean;
+  /** Local optima that the starts of the first round led to on the reduced model, best first. */
+  readonly starts: readonly Candidate[];
+  readonly history: readonly RoundRecord[];
+  /** Full factorisations before the last judgement, which is the audit. */
+  readonly factorisationsBeforeAudit: number;
+  readonly doubts: readonly string[];
+}
+
+const firstClimb: Omit<ClimbOptions, "tolerance"> = {
+  reach: 1,
+  evaluations: 110,
+  exchanges: 3,
+  frozen: new Set(),
+};
+
+/**
+ * The alternating loop: search designs on the reduced model, confirm the best on the full model, learn, and
+ * repeat until both agree and the design no longer gains. The optimum reported is the full model's.
+ *
+ * @param before - the start design's worst operating point, settled on the full model.
+ *
+ * Source: Aliyev, Benner, Mengi, Voigt, SIAM J. Matrix Anal. Appl. 41 (2020), reduced H∞ minimisation.
+ */
+export async function tune(
+  session: Session,
+  before: EnvelopeCheck,
+  options: TuneOptions,
+  progress: ReportProgress,
+  reportBest: ReportBest,
+): Promise<Tuned> {
+  const { designs } = session;
+  const random = createRandom(options.seed);
+  const anchor = designs.leastViolated(random, 2000);
+  if (!designs.isFeasible(anchor)) {
+    const incumbent = { x: anchor, worst: before, active: [before.at] };
+    return conclude(session, incumbent, { infeasible: true, starts: [], history: [], doubts: [] }, progress);
+  }
+  session.addExtremeSamples(designs.valuesOf(designs.start), true);
+  const points = [before.at, ...session.operation.corners.map((x) => session.operation.valuesOf(x))];
+  const screened = screen(session, points, anchor, options.screened, options.starts, random, progress);
+  const starts = await climbAll(
+    session,
+    screened.map(({ x }) => x),
+    points.slice(0, 3),
+    { ...firstClimb, tolerance: options.tolerance },
+    progress,
+  );
+  const doubts: string[] = [];
+  let { best, history, agreed } = await confirmRounds(
+    session,
+    starts,
+    options.tolerance,
+    options.rounds,
+    progress,
+    reportBest,
+  );
+  if (!agreed) doubts.push("reduced and full margin did not come to agree at the optimum");
+  if (designs.isFeasible(designs.start) && before.value > best.worst.value) {
+    best = { x: designs.start, worst: before, active: [before.at] };
+  }
+  if (designs.isStepped) {
+    const rounded = await roundToSteps(session, best, options.tolerance);
+    if (rounded === undefined) doubts.push("no neighbour on the purchasable steps keeps the limits");
+    best = rounded ?? best;
+  }
+  learnFromNeighbours(session, best, random, options.tolerance);
+  return conclude(session, best, { infeasible: false, starts, history, doubts }, progress);
+}
+
+function conclude(
+  session: Session,
+  incumbent: Incumbent,
+  found: Pick<Tuned, "infeasible" | "starts" | "history" | "doubts">,
+  progress: ReportProgress,
+): Tuned {
+  const { complex, real } = session.adaptive.full.counts;
+  const design = session.designs.valuesOf(incumbent.x);
+  const judgement = judge(session, design, undefined, incumbent.active, progress);
+  return { ...found, design, judgement, factorisationsBeforeAudit: complex + real };
+}
+
+/** Full-model margins at two neighbouring designs: where the reduced model was wrong there, it learns. */
+function learnFromNeighbours(
+  session: Session,
+  { x, worst }: Incumbent,
+  random: Random,
+  tolerance: number,
+): void {
+  const { designs } = session;
+  for (let k = 0; k < 2; k++) {
+    const shifted = x.map((xi) => Math.min(1, Math.max(0, xi + 0.05 * (2 * random.uniform() - 1))));
+    const neighbour = designs.pullBack(shifted, x);
+    settleAt(session, designs.valuesOf(neighbour), worst.at, tolerance);
+  }
+}
