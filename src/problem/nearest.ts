@@ -1,10 +1,12 @@
-/** The candidate that `name` was probably meant to be (at most a third of its letters wrong), if any. */
+/** The candidate that `name` was probably meant to be: at most a third of its letters wrong, or cut short. */
 export function nearest(name: string, candidates: Iterable<string>): string | undefined {
+  const wanted = name.toLowerCase();
   const ranked = [...candidates]
-    .map((candidate) => ({ candidate, wrong: distance(name.toLowerCase(), candidate.toLowerCase()) }))
-    .filter(
-      ({ candidate, wrong }) => wrong <= Math.max(1, Math.floor(Math.max(name.length, candidate.length) / 3)),
-    )
+    .map((candidate) => ({ candidate, wrong: distance(wanted, candidate.toLowerCase()) }))
+    .filter(({ candidate, wrong }) => {
+      const isCut = wanted.length >= 3 && candidate.toLowerCase().startsWith(wanted);
+      return isCut || wrong <= Math.max(1, Math.floor(Math.max(name.length, candidate.length) / 3));
+    })
     .sort((a, b) => a.wrong - b.wrong);
   return ranked[0]?.candidate;
 }

@@ -360,6 +360,8 @@ describe("the faults of a problem file", () => {
     expect(await hintOf(withTerm({ matrix: "k" }))).toContain('"K"');
     expect(await hintOf(withFile("squar4.mtx"))).toContain('"square4.mtx"');
     expect(await hintOf(factor("densty", { constants: { density: 1 } }))).toContain('"density"');
+    expect(await hintOf(factor("dens", { constants: { density: 1 } }))).toContain('"density"');
+    expect(await hintOf(factor("quite", { constants: { density: 1 } }))).toBe("Use one of: density, pi.");
     expect(await hintOf({ ...base, margin: { measure: "radus" } })).toContain('"radius"');
   });
 
