@@ -18,9 +18,14 @@ export const geometry = {
 } as const;
 
 export const PADS_PER_CALIPER = 2;
-/** Smallest model: two elements across each pad and band, one in each gap. */
+/** Smallest model: below it a gap between calipers is hardly three elements long. */
 const FEWEST_DOFS = 300;
 const DOFS_PER_NODE = 3;
+/**
+ * Width over length of an element. The waves that flutter have 12 and 13 nodal diameters but no nodal circle:
+ * with square elements the model of 1 000 dofs misses one of them.
+ */
+const ELEMENT_ASPECT = 2;
 const RADIANS = Math.PI / 180;
 
 /** Contact of the two pads of one caliper: both touch the same nodes, one from each face. */
@@ -46,7 +51,7 @@ export const padDofs: number = PADS_PER_CALIPER * geometry.caliperDegrees.length
 
 /**
  * The mesh with the fewest spokes that gives at least `dofs` dofs, pads included, with elements
- * near to square; mesh lines run along the edges and the middle of every pad.
+ * of about the same shape; mesh lines run along the edges and the middle of every pad.
  *
  * @throws InputError `input.sample-size` below 300 dofs.
  */
@@ -63,7 +68,7 @@ export function ringBrakeLayout(dofs: number): RingBrakeLayout {
   const { innerRadius, outerRadius, rubRadius } = geometry;
   const width = outerRadius - innerRadius;
   const circumference = Math.PI * (outerRadius + innerRadius);
-  const across = Math.max(3, Math.round(Math.sqrt((nodes * width) / circumference)));
+  const across = Math.max(3, Math.round(Math.sqrt((nodes * width) / (ELEMENT_ASPECT * circumference))));
   // Simpson's rule over a patch wants an even number of elements in both directions.
   const acrossRub = 2 * Math.max(1, Math.round((across * (outerRadius - rubRadius)) / width / 2));
   const acrossInner = across - acrossRub;
