@@ -146,6 +146,11 @@ it("the 2×2 cases come out right: real, complex, triangular, multiple", () => {
   expect(distance([0, 0], [1, -1], of(0, 1, -1, 0).re, of(0, 1, -1, 0).im)).toBeLessThan(4 * eps);
 });
 
+it("a lower triangular 2×2 matrix gives its diagonal to the last digit beside a large entry", () => {
+  const { re } = eigenvalues({ rows: 2, cols: 2, values: Float64Array.of(0.1, 7, 0, 1e10) });
+  expect(Array.from(re).sort((x, y) => x - y)).toEqual([0.1, 1e10]);
+});
+
 it("a Jordan block keeps its eigenvalue and is reported as defective", () => {
   const { re, defective } = expectEigen(matrixOf(4, (i, j) => (i === j ? 2 : j === i + 1 ? 1 : 0)));
   expect(Array.from(re)).toEqual([2, 2, 2, 2]);

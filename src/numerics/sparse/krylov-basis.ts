@@ -1,6 +1,6 @@
 import { NumericalError } from "../../errors.js";
 import { addProductInto, addTransposedProductInto } from "../dense/block-kernels.js";
-import { type DenseMatrix, zeros } from "../dense/matrix.js";
+import { column, type DenseMatrix, zeros } from "../dense/matrix.js";
 import { multiply, wholeBlock } from "../dense/products.js";
 import { type SymmetricEigen, symmetricEigen } from "../dense/symmetric-eigen.js";
 import type { Random } from "../random.js";
@@ -114,14 +114,44 @@ export class KrylovBasis {
   }
 
   /**
-   * The vectors A V s / θ = V s + W E s / θ of the chosen pairs: by this step
-   * the part of V that lies in the null space of M, invisible to the M-norm, drops out.
+   * The vectors A V s / θ = V s + W E s / θ of the chosen pairs. The part of V in the
+   * null space of M, which grows unseen by the M-norm, drops out by this as far as the
+   * recurrence knows it; if one solve with a mix of all vectors x still shows
+   * x ≠ A x / θ beyond `tolerance`, each is pushed through A once more.
    *
    * Source: Nour-Omid, Parlett, Ericsson & Jensen, Math. Comp. 48(178), 1987, pp. 663–673.
    */
-  purified(pairs: RitzPairs, chosen: readonly number[]): DenseMatrix {
-    const cols = this.size + this.ahead;
-    return multiply(this.columns(0, cols), this.purifiedCoefficients(pairs, chosen));
+  purified(pairs: RitzPairs, chosen: readonly number[], tolerance: number): DenseMatrix {
+    const theta = Float64Array.from(chosen, (j) => pairs.eigen.values[j]);
+    const x = multiply(this.columns(0, this.size + this.ahead), this.purifiedCoefficients(pairs, chosen));
+    if (x.cols === 0) return x;
+    const signs = zeros(x.cols, 2);
+    for (let j = 0; j < x.cols; j++) {
+      signs.values[j] = this.random.uniform() < 0.5 ? -1 : 1;
+      signs.values[x.cols + j] = signs.values[j] / theta[j];
+    }
+    const mixed = multiply(x, signs);
+    const plain = column(mixed, 0);
+    const pushed: DenseMatrix = { rows: x.rows, cols: 1, values: column(mixed, 1) };
+    this.applyOperator(pushed);
+    let change = 0;
+    for (let i = 0; i < x.rows; i++) change += (pushed.values[i] - plain[i]) ** 2;
+    if (change <= x.cols * tolerance * tolerance * dot(plain, plain)) return x;
+    this.applyOperator(x);
+    for (let j = 0; j < x.cols; j++) {
+      for (let i = j * x.rows; i < (j + 1) * x.rows; i++) x.values[i] /= theta[j];
+    }
+    return x;
+  }
+
+  // x ← A x.
+  private applyOperator(x: DenseMatrix): void {
+    const image = new Float64Array(x.rows);
+    for (let j = 0; j < x.cols; j++) {
+      this.problem.applyMassInto(image, column(x, j));
+      column(x, j).set(image);
+    }
+    this.solve(x);
   }
 
   /** Thick restart: keeps the chosen pairs and the block ahead. */
@@ -196,10 +226,8 @@ export class KrylovBasis {
     while (this.ahead < this.block && this.size + this.ahead < n && failures < attempts) {
       const at = this.size + this.ahead;
       const x = this.columns(at, 1);
-      const source = this.massColumn(at);
-      for (let i = 0; i < n; i++) source[i] = this.random.normal();
-      this.problem.applyMassInto(x.values, source);
-      this.solve(x);
+      for (let i = 0; i < n; i++) x.values[i] = this.random.normal();
+      this.applyOperator(x);
       const scale = columnNorm(this.projectOut(at, x), 0);
       const correction = columnNorm(this.projectOut(at, x), 0);
       if (this.acceptColumn(scale, correction, null)) this.ahead++;

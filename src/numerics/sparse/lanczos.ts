@@ -18,7 +18,7 @@ export interface LanczosOptions {
   readonly blockSize: number;
   /** Bound of ‖A x − θ x‖ / |θ| in the M-norm, A = (K − μM)⁻¹ M, θ = 1/(λ − μ). */
   readonly tolerance: number;
-  /** The search ends before a block that would bring the columns solved for above this. */
+  /** The search ends before a block that would bring the columns solved for above this; a last check may take `expected` more. */
   readonly maximumSolves: number;
   readonly random: Random;
 }
@@ -166,10 +166,11 @@ function gather(
   const byDistance = [...state.found].sort((i, j) => outside(i) - outside(j));
   const chosen = byDistance.filter((j, place) => place < options.expected || outside(j) === 0);
   chosen.sort((i, j) => lambda[i] - lambda[j]);
+  const vectors = basis.purified(pairs, chosen, 10 * options.tolerance);
   return {
     status: chosen.length >= options.expected ? "complete" : "incomplete",
     values: Float64Array.from(chosen, (j) => lambda[j]),
-    vectors: basis.purified(pairs, chosen),
+    vectors,
     solves: basis.solves,
     residuals: Float64Array.from(chosen, (j) => (pairs.residuals[j] + rounding) / Math.abs(theta[j])),
   };
