@@ -158,3 +158,33 @@ export function plateCase(side: number, seed: number): SparseCase & { readonly g
   const groups = Int32Array.from({ length: n }, (_, i) => Math.floor(i / 3));
   return { name: "plate", a, im: fromTriplets(n, n, rows, cols, im).values, groups };
 }
+
+/** A plate with `ties` Lagrange multipliers that make rotations of neighbouring nodes equal: [K Gᵀ; G 0]. */
+export function tiedPlateCase(side: number, ties: number): SparseCase {
+  const { a, im } = plateCase(side, 5);
+  const n = a.cols;
+  const rows = Array.from(a.rowIndex);
+  const cols: number[] = [];
+  for (let j = 0; j < n; j++) for (let p = a.colStart[j]!; p < a.colStart[j + 1]!; p++) cols.push(j);
+  const re = Array.from(a.values);
+  const imaginary = Array.from(im);
+  const enter = (i: number, j: number, value: number): void => {
+    rows.push(i);
+    cols.push(j);
+    re.push(value);
+    imaginary.push(0);
+  };
+  for (let t = 0; t < ties; t++) {
+    enter(n + t, n + t, 0);
+    for (const [dof, sign] of [
+      [6 * t + 1, 1],
+      [6 * t + 4, -1],
+    ] as const) {
+      enter(n + t, dof, sign);
+      enter(dof, n + t, sign);
+    }
+  }
+  const order = n + ties;
+  const tied = fromTriplets(order, order, rows, cols, re);
+  return { name: "tied plate", a: tied, im: fromTriplets(order, order, rows, cols, imaginary).values };
+}

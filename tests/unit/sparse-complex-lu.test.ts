@@ -3,7 +3,7 @@ import type { ComplexMatrix } from "../../src/numerics/dense/matrix.js";
 import { analyse } from "../../src/numerics/sparse/analysis.js";
 import { factorComplex } from "../../src/numerics/sparse/complex-lu.js";
 import { fromTriplets } from "../../src/numerics/sparse/sparse-matrix.js";
-import { awkwardCase, plateCase, type SparseCase, uniform } from "./sparse-cases.js";
+import { awkwardCase, plateCase, type SparseCase, tiedPlateCase, uniform } from "./sparse-cases.js";
 
 type Complex = [number, number];
 const times = ([a, b]: Complex, [c, d]: Complex): Complex => [a * c - b * d, a * d + b * c];
@@ -238,6 +238,20 @@ describe("complex LU of degenerate matrices", () => {
     expect(factorisation.solveInPlace(b).backwardError).toBeLessThan(1e-14);
     // Exactly 3n − 2 without amalgamation, which may at most double it.
     expect(factorisation.nonzeros).toBeLessThan(8 * n);
+  });
+});
+
+describe("complex LU of a plate with 2700 dofs and 400 ties", () => {
+  it("delays pivots of the ties to later fronts and keeps the backward error below 1e-14", () => {
+    const { a, im } = tiedPlateCase(30, 400);
+    const analysis = analyse(a);
+    const factorisation = factorComplex(analysis, a, { re: a.values, im });
+    expect(factorisation.perturbedPivots).toBe(0);
+    expect(factorisation.nonzeros).toBeGreaterThan(analysis.predictedNonzeros);
+    expect(factorisation.nonzeros).toBeLessThan(1.1 * analysis.predictedNonzeros);
+    const b = rightSides(a.rows, 2, uniform(8));
+    expect(factorisation.solveInPlace(copy(b)).backwardError).toBeLessThan(1e-14);
+    expect(factorisation.solveAdjointInPlace(copy(b)).backwardError).toBeLessThan(1e-14);
   });
 });
 

@@ -3,7 +3,7 @@ import { describe, expect, it } from "vitest";
 import { analyse } from "../../src/numerics/sparse/analysis.js";
 import { fromTriplets, multiplyAddInto, type SparseMatrix } from "../../src/numerics/sparse/sparse-matrix.js";
 import { factorSymmetric } from "../../src/numerics/sparse/symmetric-ldl.js";
-import { awkwardCase, plateCase, uniform } from "./sparse-cases.js";
+import { awkwardCase, plateCase, tiedPlateCase, uniform } from "./sparse-cases.js";
 
 const seeds = Array.from({ length: 350 }, (_, s) => s + 1);
 
@@ -112,6 +112,14 @@ describe("LDLᵀ of a plate", () => {
     const { a, groups } = plateCase(58, 3);
     const b = rightSides(a.rows, 3, 4);
     expect(factor(a, groups).solveInPlace(b).backwardError).toBeLessThan(1e-14);
+  });
+
+  it("counts one negative eigenvalue for every tie between dofs of a positive definite plate", () => {
+    const { a } = tiedPlateCase(30, 400);
+    const factorisation = factor(a);
+    expect(factorisation.inertia).toEqual({ negative: 400, zero: 0, positive: 2700 });
+    expect(factorisation.inertiaReliable).toBe(true);
+    expect(factorisation.solveInPlace(rightSides(a.rows, 3, 4)).backwardError).toBeLessThan(1e-14);
   });
 
   it("counts the eigenvalues below a shift like ml-matrix on a small plate", () => {

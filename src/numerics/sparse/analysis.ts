@@ -6,6 +6,7 @@
  */
 
 import { invariant } from "../../errors.js";
+import { minimumDegree } from "./minimum-degree.js";
 import { nestedDissection } from "./nested-dissection.js";
 import { membersByNode, type NodeGraph, nodeGraph } from "./node-graph.js";
 import type { SparsePattern } from "./sparse-matrix.js";
@@ -49,7 +50,7 @@ export function analyse(pattern: SparsePattern, groups?: Int32Array): SymbolicAn
     `analyse: a ${pattern.rows}×${pattern.cols} pattern is not square`,
   );
   const nodes = nodeGraph(pattern, groups);
-  const tree = supernodeTree(nodes.graph, nestedDissection(nodes.graph));
+  const tree = cheapestTree(nodes.graph);
   const fronts = frontDofs(nodes, tree);
   return {
     order: pattern.cols,
@@ -59,6 +60,13 @@ export function analyse(pattern: SparsePattern, groups?: Int32Array): SymbolicAn
     ...sizes(tree, fronts),
     ...entryPlaces(pattern, tree.count, fronts),
   };
+}
+
+/** Neither ordering wins everywhere: dissection on wide models, minimum degree on narrow and irregular ones. */
+function cheapestTree(graph: NodeGraph["graph"]): SupernodeTree {
+  const dissected = supernodeTree(graph, nestedDissection(graph));
+  const greedy = supernodeTree(graph, minimumDegree(graph));
+  return greedy.operations < dissected.operations ? greedy : dissected;
 }
 
 type FrontDofs = Pick<SymbolicAnalysis, "pivotStart" | "pivots" | "belowStart" | "below">;

@@ -115,7 +115,6 @@ function packLeftAdjoint(a: ComplexBlock, i0: number, rows: number, k: number): 
   }
 }
 
-// biome-ignore lint/complexity/noExcessiveLinesPerFunction: one register-blocked loop nest
 function subtractPacked(c: ComplexBlock, i0: number, rows: number, n: number, k: number): void {
   const { re, im, stride } = c;
   const pa = packedA;

@@ -56,7 +56,7 @@ export function factorComplex(
   const factor = new ComplexMultifrontal(analysis, scaledValues(pattern, values, exponents)).factor();
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const determinant = determinantOf(factor, exponents);
-  const refinement = new ComplexRefinement(pattern, values);
+  const refinement = new ComplexRefinement(pattern, values, scale);
   const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport =>
     refinement.solve(b, adjoint, (x) => solveWithFactor(factor, scale, x, adjoint));
   return {

@@ -16,28 +16,30 @@ import {
 } from "./backward-error.js";
 import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
 
+/** Infinity norms of A and Aᴴ. */
+interface MatrixNorms {
+  readonly plain: number;
+  readonly adjoint: number;
+}
+
 export class ComplexRefinement {
   private readonly pattern: SparsePattern;
   private readonly values: ComplexValues;
-  private readonly normOfA: number;
-  private readonly normOfAdjoint: number;
+  private readonly ones: Float64Array;
+  private readonly scale: Float64Array;
+  private readonly inverseScale: Float64Array;
+  private readonly norms: MatrixNorms;
+  private readonly scaledNorms: MatrixNorms;
 
-  constructor(pattern: SparsePattern, values: ComplexValues) {
+  /** @param scale - The diagonal of D that equilibrates D A D. */
+  constructor(pattern: SparsePattern, values: ComplexValues, scale: Float64Array) {
     this.pattern = pattern;
     this.values = values;
-    const rowSum = new Float64Array(pattern.rows);
-    let largestColumn = 0;
-    for (let j = 0; j < pattern.cols; j++) {
-      let columnSum = 0;
-      for (let p = pattern.colStart[j]; p < pattern.colStart[j + 1]; p++) {
-        const modulus = Math.sqrt(values.re[p] * values.re[p] + values.im[p] * values.im[p]);
-        columnSum += modulus;
-        rowSum[pattern.rowIndex[p]] += modulus;
-      }
-      largestColumn = Math.max(largestColumn, columnSum);
-    }
-    this.normOfAdjoint = largestColumn;
-    this.normOfA = rowSum.reduce((a, b) => Math.max(a, b), 0);
+    this.ones = new Float64Array(scale.length).fill(1);
+    this.scale = scale;
+    this.inverseScale = scale.map((d) => 1 / d);
+    this.norms = matrixNorms(pattern, values, this.ones);
+    this.scaledNorms = matrixNorms(pattern, values, scale);
   }
 
   /**
@@ -107,18 +109,25 @@ export class ComplexRefinement {
     copyColumn(residual, c, b, c);
     if (adjoint) this.subtractAdjointProduct(residual, x, c);
     else this.subtractProduct(residual, x, c);
-    const normX = columnNorm(x, c);
-    const normB = columnNorm(b, c);
-    const normA = adjoint ? this.normOfAdjoint : this.normOfA;
-    const error = backwardErrorOf(columnNorm(residual, c), normA, normX, normB);
-    if (!Number.isFinite(normX) || !Number.isFinite(error)) {
+    const { ones, scale, inverseScale } = this;
+    const side = adjoint ? "adjoint" : "plain";
+    const normX = columnNorm(x, c, ones);
+    const normB = columnNorm(b, c, ones);
+    const error = backwardErrorOf(columnNorm(residual, c, ones), this.norms[side], normX, normB);
+    const scaledError = backwardErrorOf(
+      columnNorm(residual, c, scale),
+      this.scaledNorms[side],
+      columnNorm(x, c, inverseScale),
+      columnNorm(b, c, scale),
+    );
+    if (!Number.isFinite(normX) || !Number.isFinite(error) || !Number.isFinite(scaledError)) {
       throw new NumericalError(
         "numerics.singular",
         `column ${c} of the solution is not finite (right-hand side of norm ${normB.toExponential(2)})`,
         "The matrix is singular or its entries span too wide a range; check supports, units and massless dofs.",
       );
     }
-    return error;
+    return Math.max(error, scaledError);
   }
 
   private subtractProduct(r: ComplexMatrix, x: ComplexMatrix, c: number): void {
@@ -166,14 +175,33 @@ function copyColumn(target: ComplexMatrix, to: number, source: ComplexMatrix, fr
   target.im.set(source.im.subarray(from * n, (from + 1) * n), to * n);
 }
 
-/** Largest modulus in column c; NaN or infinite when an entry is. */
-function columnNorm(x: ComplexMatrix, c: number): number {
+/** Largest weighted modulus in column c; NaN when an entry is. */
+function columnNorm(x: ComplexMatrix, c: number, weight: Float64Array): number {
   let largest = 0;
-  for (let i = c * x.rows; i < (c + 1) * x.rows; i++) {
-    const square = x.re[i] * x.re[i] + x.im[i] * x.im[i];
-    // Written so that a NaN is kept.
-    if (!(square <= largest)) largest = square;
-    if (Number.isNaN(square)) return Number.NaN;
+  for (let i = 0, p = c * x.rows; i < x.rows; i++, p++) {
+    const re = x.re[p] * weight[i];
+    const im = x.im[p] * weight[i];
+    const square = re * re + im * im;
+    if (square > largest) largest = square;
+    else if (Number.isNaN(square)) return Number.NaN;
   }
   return Math.sqrt(largest);
+}
+
+/** Norms of D A D with D = diag(scale). */
+function matrixNorms(pattern: SparsePattern, values: ComplexValues, scale: Float64Array): MatrixNorms {
+  const rowSum = new Float64Array(pattern.rows);
+  let adjoint = 0;
+  for (let j = 0; j < pattern.cols; j++) {
+    let columnSum = 0;
+    for (let p = pattern.colStart[j]; p < pattern.colStart[j + 1]; p++) {
+      const i = pattern.rowIndex[p];
+      const modulus =
+        Math.sqrt(values.re[p] * values.re[p] + values.im[p] * values.im[p]) * scale[i] * scale[j];
+      columnSum += modulus;
+      rowSum[i] += modulus;
+    }
+    adjoint = Math.max(adjoint, columnSum);
+  }
+  return { plain: rowSum.reduce((a, b) => Math.max(a, b), 0), adjoint };
 }

@@ -18,18 +18,23 @@ import { multiplyAddInto, type SparseMatrix } from "./sparse-matrix.js";
 
 export class RealRefinement {
   private readonly a: SparseMatrix;
+  private readonly ones: Float64Array;
+  private readonly scale: Float64Array;
+  private readonly inverseScale: Float64Array;
   private readonly normOfA: number;
+  private readonly scaledNormOfA: number;
 
-  /** @param a - Symmetric, both triangles stored. */
-  constructor(a: SparseMatrix) {
+  /**
+   * @param a - Symmetric, both triangles stored.
+   * @param scale - The diagonal of D that equilibrates D A D.
+   */
+  constructor(a: SparseMatrix, scale: Float64Array) {
     this.a = a;
-    let largest = 0;
-    for (let j = 0; j < a.cols; j++) {
-      let sum = 0;
-      for (let p = a.colStart[j]; p < a.colStart[j + 1]; p++) sum += Math.abs(a.values[p]);
-      largest = Math.max(largest, sum);
-    }
-    this.normOfA = largest;
+    this.ones = new Float64Array(scale.length).fill(1);
+    this.scale = scale;
+    this.inverseScale = scale.map((d) => 1 / d);
+    this.normOfA = matrixNorm(a, this.ones);
+    this.scaledNormOfA = matrixNorm(a, scale);
   }
 
   /**
@@ -87,26 +92,46 @@ export class RealRefinement {
     const r = column(residual, c);
     r.set(column(b, c));
     multiplyAddInto(r, -1, this.a, column(x, c));
-    const normX = maxNorm(column(x, c));
-    const normB = maxNorm(column(b, c));
-    const error = backwardErrorOf(maxNorm(r), this.normOfA, normX, normB);
-    if (!Number.isFinite(normX) || !Number.isFinite(error)) {
+    const { ones, scale, inverseScale } = this;
+    const normX = maxNorm(column(x, c), ones);
+    const normB = maxNorm(column(b, c), ones);
+    const error = backwardErrorOf(maxNorm(r, ones), this.normOfA, normX, normB);
+    const scaledError = backwardErrorOf(
+      maxNorm(r, scale),
+      this.scaledNormOfA,
+      maxNorm(column(x, c), inverseScale),
+      maxNorm(column(b, c), scale),
+    );
+    if (!Number.isFinite(normX) || !Number.isFinite(error) || !Number.isFinite(scaledError)) {
       throw new NumericalError(
         "numerics.singular",
         `column ${c} of the solution is not finite (right-hand side of norm ${normB.toExponential(2)})`,
         "The matrix is singular or its entries span too wide a range; check supports, units and massless dofs.",
       );
     }
-    return error;
+    return Math.max(error, scaledError);
   }
 }
 
-function maxNorm(x: Float64Array): number {
+/** Largest weighted modulus; NaN when an entry is. */
+function maxNorm(x: Float64Array, weight: Float64Array): number {
   let largest = 0;
   for (let i = 0; i < x.length; i++) {
-    const modulus = Math.abs(x[i]);
+    const modulus = Math.abs(x[i]) * weight[i];
     if (modulus > largest) largest = modulus;
     else if (Number.isNaN(modulus)) return Number.NaN;
+  }
+  return largest;
+}
+
+/** Infinity norm of D A D with D = diag(scale) and A symmetric. */
+function matrixNorm(a: SparseMatrix, scale: Float64Array): number {
+  let largest = 0;
+  for (let j = 0; j < a.cols; j++) {
+    let sum = 0;
+    for (let p = a.colStart[j]; p < a.colStart[j + 1]; p++)
+      sum += Math.abs(a.values[p]) * scale[a.rowIndex[p]];
+    largest = Math.max(largest, sum * scale[j]);
   }
   return largest;
 }

@@ -16,6 +16,8 @@ export interface SupernodeTree {
   /** The vertices of supernode s, in elimination order, are `vertices[vertexStart[s] … vertexStart[s + 1])`. */
   readonly vertexStart: Int32Array;
   readonly vertices: Int32Array;
+  /** Sum of the squared column lengths of L, to compare orders by. */
+  readonly operations: number;
 }
 
 /** @param order - The vertices of the graph in the order of their elimination. */
@@ -96,6 +98,7 @@ class Amalgamation {
   private readonly zeros: Float64Array;
   /** Column that took column k over, or k. */
   private readonly host: Int32Array;
+  private readonly operations: number;
 
   constructor(graph: Graph, order: Int32Array, parent: Int32Array, count: Float64Array) {
     this.order = order;
@@ -105,6 +108,7 @@ class Amalgamation {
     this.pivots = Float64Array.from(order, (v) => graph.weight[v]);
     this.zeros = new Float64Array(this.n);
     this.host = Int32Array.from(order, (_, k) => k);
+    this.operations = count.reduce((sum, length, k) => sum + graph.weight[order[k]] * length * length, 0);
   }
 
   tree(): SupernodeTree {
@@ -159,7 +163,7 @@ class Amalgamation {
       vertexStart[s + 1] = vertexStart[s] + members[k].length;
       if (above[k] >= 0) treeParent[s] = numberOf[above[k]];
     }
-    return { count, parent: treeParent, vertexStart, vertices };
+    return { count, parent: treeParent, vertexStart, vertices, operations: this.operations };
   }
 
   /** Children whose subtrees need the most room beyond what they leave behind go first. */

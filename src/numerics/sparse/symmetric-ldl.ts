@@ -63,7 +63,7 @@ export function factorSymmetric(
     factor,
     ZERO_PIVOT_EPSILONS * Number.EPSILON * (scaled.norm > 0 ? scaled.norm : 1),
   );
-  const refinement = new RealRefinement(a);
+  const refinement = new RealRefinement(a, scale);
   return {
     order: analysis.order,
     nonzeros: factor.nonzeros,
