@@ -2,7 +2,7 @@ import type { SampleModel } from "./sample-model.js";
 
 const NOTES = `A block on a moving belt, held by springs so that its two motions couple: the smallest model that friction alone makes flutter.
 M = I, D = damping I, K = [k11 k12; k12 k22], N = friction [0 -k3; 0 0], friction 1 in the file, so that the multiplier alpha is the critical friction coefficient itself.
-With equal damping d of both coordinates the eigenvalues obey (s^2 + d s) = -lambda, lambda those of K + alpha N, and flutter begins where lambda turns complex far enough: Im(lambda)^2 = d^2 Re(lambda).
+With equal damping d of both coordinates the eigenvalues obey s^2 + d s = -lambda, lambda those of K + alpha N. Flutter begins not where lambda turns complex but a little later, where Im(lambda)^2 = d^2 Re(lambda).
 Closed form: (k11 - k22)^2 / 4 + k12 (k12 - alpha k3) = -d^2 (k11 + k22) / 2, so
 alpha = [k12 + (k11 - k22)^2 / (4 k12) + d^2 (k11 + k22) / (2 k12)] / k3.
 With k11 = 3, k12 = 1, k22 = 7/3, k3 = 4/3, d = 0.1: alpha = 64/75 = 0.853333..., at omega^2 = 8/3, 0.259899 Hz. Without damping: 5/6 = 0.833333...
