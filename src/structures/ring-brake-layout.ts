@@ -22,8 +22,8 @@ export const PADS_PER_CALIPER = 2;
 const FEWEST_DOFS = 300;
 const DOFS_PER_NODE = 3;
 /**
- * Width over length of an element. The waves that flutter have 12 and 13 nodal diameters but no nodal circle:
- * with square elements the model of 1 000 dofs misses one of them.
+ * Width over length of an element. The waves nearest to flutter have up to 18 nodal diameters but no nodal circle:
+ * with square elements a model of 1 000 dofs misses the highest of them.
  */
 const ELEMENT_ASPECT = 2;
 const RADIANS = Math.PI / 180;
