@@ -1,8 +1,7 @@
 import type { ModelState, ParametricModel } from "../model/parametric-model.js";
-import { type GroupSum, ownFrequency, sumOfGroups } from "../model/structure-check.js";
-import { column, type DenseMatrix, zeros } from "../numerics/dense/matrix.js";
-import { symmetricEigen } from "../numerics/dense/symmetric-eigen.js";
-import { multiplyAddInto, type SparseMatrix } from "../numerics/sparse/sparse-matrix.js";
+import { ownFrequency, sumOfGroups } from "../model/structure-check.js";
+import { column } from "../numerics/dense/matrix.js";
+import type { SparseMatrix } from "../numerics/sparse/sparse-matrix.js";
 import { energyForm } from "./energy-form.js";
 import { FullModel, type FullPencil } from "./full-model.js";
 import { countModesBelow, naturalModes } from "./natural-modes.js";
@@ -27,8 +26,6 @@ export const mostWithoutBand = 300;
 const mostComputed = 200;
 /** xᵀDx below this times ω xᵀMx counts as no damping. */
 const undampedTolerance = 1e-12;
-/** Modes closer than this, relative, are mixed freely before they are judged. */
-const clusterGap = 1e-7;
 
 /**
  * Real modes K x = ω²M x with D x = 0 (tolerance: xᵀDx ≤ 1e-12 ω xᵀMx): without gyroscopic and feeding terms they
@@ -36,8 +33,8 @@ const clusterGap = 1e-7;
  * with damping, is ignored.
  *
  * They are the same for K + τD as for K, whatever τ > 0: so a large τ lifts the damped modes out of the
- * way, keeps massless dofs held by dashpots alone regular, and few modes are left to compute.
- * M, D ≥ 0 is assumed. Some four real factorisations.
+ * way (a dashpot that sees a combination of equal modes splits them), keeps massless dofs held by dashpots alone regular, and few modes are left to compute.
+ * M, D ≥ 0 is assumed. Some five real factorisations.
  *
  * @param upperOmega - upper end of the search [rad/s]; null: all frequencies, for at most 300 dofs.
  * @param massRank - number of positive eigenvalues of M.
@@ -54,7 +51,7 @@ export function undampedModes(
     return { ...none, count: null, modesBelow: null, reason: "needs margin.bandHz above 300 free dofs" };
   }
   const { coefficients } = state;
-  const damping = sumOfGroups(model, coefficients, ["damping"]);
+  const damping = sumOfGroups(model, coefficients, ["damping"]).values;
   const plain = new FullModel(model);
   const plainPencil = plain.pencilAt(state);
   const upper = upperOmega ?? aboveAllModes(plainPencil, massRank, startFrequency(model, coefficients));
@@ -62,13 +59,19 @@ export function undampedModes(
     const reason = "the real modes could not be counted";
     return { ...none, count: null, modesBelow: null, reason, factorisations: plain.counts.real };
   }
-  const below = countModesBelow(plainPencil, upper);
-  const modesBelow = below.reliable ? below.count : null;
+  const modesBelow = provenCount(plainPencil, upper);
   const lifted = liftedModel(model, state, 1e4 * upper);
   const full = new FullModel(lifted.model);
   const found = searchLifted(full.pencilAt(lifted.state), plainPencil, damping, upper);
   const factorisations = plain.counts.real + full.counts.real;
   return { ...found, searchedTo: upper, modesBelow, factorisations };
+}
+
+/** Modes below ω; null unless K + ω²M is definite, for only then the inertia of K − ω²M counts nothing but modes. */
+function provenCount(pencil: FullPencil, omega: number): number | null {
+  const { count, reliable } = countModesBelow(pencil, omega);
+  const { inertia, inertiaReliable } = pencil.factorUndamped(-omega * omega);
+  return reliable && inertiaReliable && inertia.negative === 0 ? count : null;
 }
 
 /** The model with K + τD in place of K. */
@@ -83,12 +86,12 @@ function liftedModel(model: ParametricModel, state: ModelState, tau: number) {
 
 type Found = Pick<UndampedModes, "count" | "omega" | "reason">;
 
-function searchLifted(lifted: FullPencil, plain: FullPencil, damping: GroupSum, upper: number): Found {
+function searchLifted(lifted: FullPencil, plain: FullPencil, damping: Float64Array, upper: number): Found {
   const undetermined = (reason: string): Found => ({ count: null, omega: [], reason });
   const { count, reliable } = countModesBelow(lifted, upper);
   if (!reliable) return undetermined("the real modes could not be counted");
   if (count === 0) return { count: 0, omega: [], reason: null };
-  const undampedModel = damping.values.every((value) => value === 0);
+  const undampedModel = damping.every((value) => value === 0);
   if (count > mostComputed) {
     return undampedModel
       ? { count, omega: [], reason: null }
@@ -98,83 +101,40 @@ function searchLifted(lifted: FullPencil, plain: FullPencil, damping: GroupSum, 
   if (!energy.definite) return undetermined("K + σM is indefinite or singular for every σ tried");
   const modes = naturalModes(lifted, upper, energy, count);
   if (!modes.complete) return undetermined("not all real modes could be computed");
-  const matrix: SparseMatrix = { ...plain.stiffnessMatrix, values: damping.values };
-  const moduli: SparseMatrix = { ...matrix, values: damping.moduli };
-  const omega = clusters(modes.lambda, energy.sigma).flatMap(([from, to]) =>
-    undampedInCluster(modes.vectors, from, to, plain.stiffnessMatrix, matrix, moduli, upper),
-  );
+  const matrix: SparseMatrix = { ...plain.stiffnessMatrix, values: damping };
+  const omega = Array.from(modes.lambda.keys())
+    .map((j) => undampedFrequency(column(modes.vectors, j), plain.stiffnessMatrix, matrix, upper))
+    .filter((each) => each !== null);
   return { count: omega.length, omega: omega.sort((a, b) => a - b), reason: null };
 }
 
-/** Ranges [from, to) of eigenvalues that cannot be told apart. */
-function clusters(lambda: Float64Array, sigma: number): [number, number][] {
-  const ranges: [number, number][] = [];
-  lambda.forEach((value, j) => {
-    const last = ranges[ranges.length - 1];
-    const isClose = j > 0 && value - lambda[j - 1] <= clusterGap * Math.abs(value) + 1e-9 * sigma;
-    if (last !== undefined && isClose) last[1] = j + 1;
-    else ranges.push([j, j + 1]);
-  });
-  return ranges;
-}
-
-/**
- * Frequencies of the undamped combinations of M-orthonormal modes from … to − 1: the kernel of XᵀDX, and XᵀKX on it.
- * Modes of negative λ, which are not oscillations, are left out.
- */
-function undampedInCluster(
-  vectors: DenseMatrix,
-  from: number,
-  to: number,
+/** ω of an undamped mode (M-normalised) by its Rayleigh quotient; null for a damped one and where xᵀKx < 0, no oscillation. */
+function undampedFrequency(
+  x: Float64Array,
   stiffness: SparseMatrix,
   damping: SparseMatrix,
-  dampingModuli: SparseMatrix,
   upper: number,
-): number[] {
-  const modes = Array.from({ length: to - from }, (_, j) => column(vectors, from + j));
-  const k = compress(stiffness, modes);
-  const d = compress(damping, modes);
-  const typical = Math.sqrt(Math.max(0, k.values[0]));
-  // A rigid motion has no ω of its own: the search's upper end stands in, scaled down to where rounding reaches.
-  const floor = undampedTolerance * Math.max(typical, 1e-3 * upper);
-  const rounding = roundingOf(dampingModuli, modes);
-  const eigen = symmetricEigen(d);
-  const kernel = modes.map((_, j) => j).filter((j) => Math.abs(eigen.values[j]) <= floor + rounding);
-  const combined = kernel.map((j) => combination(modes, column(eigen.vectors, j)));
-  if (combined.length === 0) return [];
-  const zero = roundingOf(stiffness, combined);
-  const lambda = [...symmetricEigen(compress(stiffness, combined)).values];
-  return lambda.filter((value) => value >= -zero).map((value) => (value <= zero ? 0 : Math.sqrt(value)));
+): number | null {
+  const k = quadratic(stiffness, x);
+  // A rigid motion has no ω of its own: a thousandth of the search's upper end stands in.
+  const omega = Math.max(Math.sqrt(Math.max(0, k.value)), 1e-3 * upper);
+  const d = quadratic(damping, x);
+  if (Math.abs(d.value) > undampedTolerance * omega + d.rounding || k.value < -k.rounding) return null;
+  return k.value <= k.rounding ? 0 : Math.sqrt(k.value);
 }
 
-/** What rounding may leave of a vanishing xᵀAx. */
-function roundingOf(a: SparseMatrix, vectors: readonly Float64Array[]): number {
-  const moduli = { ...a, values: a.values.map(Math.abs) };
-  const sizes = vectors.map((x) => compress(moduli, [x.map(Math.abs)]).values[0]);
-  return 64 * Number.EPSILON * Math.max(...sizes);
-}
-
-/** XᵀAX. */
-function compress(a: SparseMatrix, vectors: readonly Float64Array[]): DenseMatrix {
-  const out = zeros(vectors.length, vectors.length);
-  vectors.forEach((x, j) => {
-    const ax = new Float64Array(x.length);
-    multiplyAddInto(ax, 1, a, x);
-    vectors.forEach((y, i) => {
-      let sum = 0;
-      for (let p = 0; p < y.length; p++) sum += y[p] * ax[p];
-      out.values[i + j * vectors.length] = sum;
-    });
-  });
-  return out;
-}
-
-function combination(vectors: readonly Float64Array[], weights: Float64Array): Float64Array {
-  const out = new Float64Array(vectors[0].length);
-  vectors.forEach((x, k) => {
-    for (let i = 0; i < out.length; i++) out[i] += weights[k] * x[i];
-  });
-  return out;
+/** xᵀAx, and what rounding may leave of it where it vanishes. */
+function quadratic(a: SparseMatrix, x: Float64Array): { value: number; rounding: number } {
+  let value = 0;
+  let size = 0;
+  for (let j = 0; j < a.cols; j++) {
+    for (let p = a.colStart[j]; p < a.colStart[j + 1]; p++) {
+      const part = x[a.rowIndex[p]] * a.values[p] * x[j];
+      value += part;
+      size += Math.abs(part);
+    }
+  }
+  return { value, rounding: 64 * Number.EPSILON * size };
 }
 
 function startFrequency(model: ParametricModel, coefficients: Float64Array): number {

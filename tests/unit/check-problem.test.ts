@@ -2,6 +2,7 @@ import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, describe, expect, it } from "vitest";
+import { createRandom } from "../../src/numerics/random.js";
 import { readProblem } from "../../src/problem/problem.js";
 import { type CheckResult, checkProblem } from "../../src/tuning/check-problem.js";
 
@@ -232,6 +233,29 @@ describe("definiteness", () => {
     expect(result.warnings.some((text) => text.includes("stiffness"))).toBe(true);
   });
 
+  it("takes what cancellation leaves of a sum for zero", async () => {
+    const base = chain(2);
+    // .3 − .2 − .1 = −2.8e-17 in doubles.
+    const damping = [term("K", 0.3), term("K", -0.2), term("K", -0.1)];
+    const result = await check({ ...base, terms: { ...base.terms, damping } });
+    expect(result.definiteness.damping).toMatchObject({
+      verdict: "positive semidefinite",
+      rankDeficiency: 2,
+    });
+    expect(result.status).toBe("trusted");
+  });
+
+  it("is checked anew wherever the proportions of the terms change", async () => {
+    const base = chain(2);
+    const result = await check({
+      ...base,
+      matrices: { ...base.matrices, coupling: symmetric([[1, 2, 1]]) },
+      design: { c: { range: [0.5, 1.5], start: 0.5 } },
+      terms: { ...base.terms, mass: [term("M"), term("coupling", "c")] },
+    });
+    expect(result.definiteness.mass).toMatchObject({ verdict: "indefinite", at: { c: 1.5 } });
+  });
+
   it("does not depend on the units of the dofs", async () => {
     // The matrix [1 .5; .5 1] with its second dof in units 1e7 times as large, and its negative twin.
     const scaled = (coupling: number) => ({
@@ -256,19 +280,29 @@ describe("definiteness", () => {
 
   it("is checked at all corners of the parameters in M, D and K however many others there are", async () => {
     const names = ["p", "q", "r", "s", "t", "u"];
+    const unitRange = { range: [0, 1] };
     const base = chain(2);
-    const result = await check({
-      ...base,
-      matrices: { ...base.matrices, N: { entries: [[1, 2, 1]] } },
-      envelope: Object.fromEntries([...names, "load"].map((name) => [name, { range: [0, 1], nominal: 0 }])),
-      terms: {
-        ...base.terms,
-        damping: [term("M", "1 - 2*load")],
-        circulatory: [term("N", names.join("+"))],
+    const result = await check(
+      {
+        ...base,
+        matrices: { ...base.matrices, N: { entries: [[1, 2, 1]] } },
+        design: Object.fromEntries(names.map((name) => [name, { ...unitRange, start: 0 }])),
+        envelope: { a: unitRange, b: unitRange, c: unitRange, d: unitRange },
+        terms: {
+          ...base.terms,
+          // Negative at one of the sixteen corners.
+          damping: [term("M", "1.5 - a - b + c + d")],
+          circulatory: [term("N", names.join("+"))],
+        },
       },
+      0,
+    );
+    expect(result.definiteness).toMatchObject({ points: 1 + 16, allCorners: true });
+    expect(result.definiteness.damping).toMatchObject({
+      verdict: "indefinite",
+      negative: 2,
+      at: { a: 1, b: 1, c: 0, d: 0 },
     });
-    expect(result.definiteness).toMatchObject({ points: 1 + 16 + 8, allCorners: true });
-    expect(result.definiteness.damping).toMatchObject({ verdict: "indefinite", negative: 2 });
   });
 
   it("says when not all corners could be tried", async () => {
@@ -367,6 +401,69 @@ describe("index and regularity", () => {
     expect(result.structure).toMatchObject({ index: 1, regular: true });
   });
 
+  it("are higher where the kernel of the dashpots meets no stiffness", async () => {
+    // Massless dofs 2 and 3 with a dashpot between them; moving together their springs 1 and −1 cancel.
+    const result = await check({
+      dofs: 3,
+      matrices: {
+        M: symmetric([[1, 1, 1]]),
+        K: symmetric([
+          [1, 1, 1],
+          [2, 2, 1],
+          [3, 3, -1],
+        ]),
+        D: { links: [[2, 3, 1]] },
+      },
+      terms: { mass: [term("M")], stiffness: [term("K")], damping: [term("D")] },
+    });
+    expect(result.structure).toMatchObject({ index: "higher", regular: true });
+    expect(result.definiteness.stiffness.verdict).toBe("indefinite");
+    expect(result.stability.undamped.count).toBeNull();
+  });
+
+  it("are not determined on large models beyond what massless dofs and dashpots tell", async () => {
+    const dofs = 410;
+    const base = chain(dofs);
+    const diagonal = Array.from({ length: dofs - 2 }, (_, i) => [i + 1, i + 1, 1] as const);
+    const together = [
+      [dofs - 1, dofs - 1, 1],
+      [dofs - 1, dofs, 1],
+      [dofs, dofs, 1],
+    ] as const;
+    const margin = { bandHz: [0, 0.001] };
+    const slanted = await check({
+      ...base,
+      matrices: { M: symmetric([...diagonal, ...together]), K: base.matrices.K },
+      margin,
+    });
+    expect(slanted.structure).toMatchObject({
+      masslessDofs: 0,
+      massRankDeficiency: 1,
+      index: "not determined",
+    });
+    // C = [1 1; 0 0] on the massless dofs: its kernel is slanted, and the springs on it cancel.
+    const friction = {
+      entries: [
+        [dofs - 1, dofs - 1, 1],
+        [dofs - 1, dofs, 1],
+      ],
+    };
+    const rubbed = await check({
+      ...base,
+      matrices: { M: symmetric(diagonal), K: base.matrices.K, F: friction },
+      terms: { ...base.terms, frictional: [term("F")] },
+      margin,
+    });
+    expect(rubbed.structure).toMatchObject({ masslessDofs: 2, index: "not determined" });
+  });
+
+  it("see no singular pencil in a real eigenvalue that happens to be tried", async () => {
+    // P(s) = s² − 1 vanishes at s = 1, the model's own frequency.
+    const base = chain(1);
+    const result = await check({ ...base, terms: { mass: [term("M")], stiffness: [term("K", -1)] } });
+    expect(result.structure.regular).toBe(true);
+  });
+
   it("name the dofs of a singular model: two unconnected massless dofs without stiffness", async () => {
     const result = await check({
       dofs: 5,
@@ -391,24 +488,20 @@ describe("index and regularity", () => {
   });
 
   it("find a free massless body whose springs cancel only in exact arithmetic", async () => {
-    const base = chain(1);
-    const result = await check({
-      dofs: 4,
-      matrices: {
-        M: base.matrices.M,
-        K: {
-          links: [
-            [1, 0, 0.3],
-            [2, 3, 0.1],
-            [3, 4, 0.7],
-            [2, 4, 1 / 3],
-          ],
-        },
-      },
-      terms: base.terms,
-    });
-    expect(result.structure.regular).toBe(false);
-    expect(result.structure.undeterminedDofs).toEqual([2, 3, 4]);
+    const random = createRandom(3);
+    const bodies = Array.from({ length: 20 }, (_, k) => 3 + (k % 8));
+    for (const size of bodies) {
+      const spring = () => 0.01 + random.uniform();
+      const ring = Array.from({ length: size }, (_, i) => [2 + i, 2 + ((i + 1) % size), spring()]);
+      const result = await check({
+        dofs: size + 1,
+        matrices: { M: unit(1), K: { links: [[1, 0, 0.3], ...ring, [2, 4, spring()]] } },
+        terms: { mass: [term("M")], damping: [term("M")], stiffness: [term("K")] },
+      });
+      expect(result.structure.regular).toBe(false);
+      expect(result.structure.undeterminedDofs).toHaveLength(Math.min(5, size));
+      expect(result.structure.undeterminedDofs).not.toContain(1);
+    }
   });
 
   it("are checked at corners too: a dof whose only spring may vanish", async () => {
@@ -520,6 +613,22 @@ describe("modes that no damping reaches", () => {
     });
     expect(result.stability.undamped).toMatchObject({ count: 1, frequenciesHz: [0] });
     expect(result.definiteness.stiffness.verdict).toBe("positive semidefinite");
+  });
+
+  it("do not include what is no oscillation", async () => {
+    const result = await check({
+      dofs: 2,
+      matrices: {
+        M: unit(2),
+        K: symmetric([
+          [1, 1, -1],
+          [2, 2, 4],
+        ]),
+      },
+      terms: { mass: [term("M")], stiffness: [term("K")] },
+    });
+    expect(result.stability.undamped.count).toBe(1);
+    expect(result.stability.undamped.frequenciesHz[0]).toBeCloseTo(1 / Math.PI, 12);
   });
 
   it("are looked for up to the band's upper end", async () => {
