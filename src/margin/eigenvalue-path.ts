@@ -83,6 +83,7 @@ function blend(without: DensePencil, unit: DensePencil, alpha: number): DensePen
     mix(without.massMatrix, unit.massMatrix),
     mix(without.velocityMatrix, unit.velocityMatrix),
     mix(without.displacementMatrix, unit.displacementMatrix),
+    mix(without.stiffnessMatrix, unit.stiffnessMatrix),
     unit.inputMatrix,
     unit.powers,
     unit.outputTransposedMatrix,

@@ -128,8 +128,11 @@ function startGrid(form: SpectralForm, band: Band, { screen, extra }: PeakOption
     if (!Number.isFinite(eigen.re[j])) return;
     furthest = Math.max(furthest, Math.hypot(eigen.re[j], eigen.im[j]));
     if (own[slot] < screen * strongest) return;
-    // A damped pole peaks between its |λ| and its Im λ.
-    marks.push(eigen.im[j], Math.sqrt(Math.max(0, eigen.im[j] ** 2 - eigen.re[j] ** 2)));
+    marks.push(eigen.im[j]);
+    // A well damped pole peaks lower than its Im λ by more than its neighbourhood is wide.
+    if (Math.abs(eigen.re[j]) > 0.05 * eigen.im[j]) {
+      marks.push(Math.sqrt(Math.max(0, eigen.im[j] ** 2 - eigen.re[j] ** 2)));
+    }
   });
   marks.push(Number.isFinite(band.high) ? band.high : 10 * furthest);
   const inside = marks.filter((omega) => omega >= band.low && omega <= Math.min(band.high, 10 * furthest));

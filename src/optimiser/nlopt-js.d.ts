@@ -15,5 +15,6 @@ declare module "nlopt-js" {
     readonly Algorithm: { readonly LN_COBYLA: unknown };
     readonly GC: { flush(): void };
   };
+  // biome-ignore lint/style/noDefaultExport: the package itself has one
   export default nlopt;
 }

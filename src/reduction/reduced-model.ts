@@ -13,11 +13,11 @@ export interface DensePencil extends Pencil {
   readonly massMatrix: DenseMatrix;
   readonly velocityMatrix: DenseMatrix;
   readonly displacementMatrix: DenseMatrix;
+  /** K without the circulatory part. */
+  readonly stiffnessMatrix: DenseMatrix;
   readonly inputMatrix: DenseMatrix;
   readonly outputTransposedMatrix: DenseMatrix;
 }
-
-const velocityGroups: ReadonlySet<TermGroup> = new Set(["damping", "gyroscopic", "frictional"]);
 
 /**
  * The parametric model projected once, VᵀA_kV for every constant matrix, and assembled for
@@ -58,17 +58,27 @@ export class ReducedModel {
     const r = this.#order;
     const mass = zeros(r, r);
     const velocity = zeros(r, r);
-    const displacement = zeros(r, r);
+    const stiffness = zeros(r, r);
+    const circulatory = zeros(r, r);
+    const targets = {
+      mass,
+      stiffness,
+      circulatory,
+      damping: velocity,
+      gyroscopic: velocity,
+      frictional: velocity,
+    };
     this.#model.terms.forEach((term, k) => {
-      const target = term.group === "mass" ? mass : velocityGroups.has(term.group) ? velocity : displacement;
-      addScaled(target.values, state.coefficients[k], this.#projected.get(term.matrix)!.values);
+      addScaled(targets[term.group].values, state.coefficients[k], this.#projected.get(term.matrix)!.values);
     });
+    addScaled(circulatory.values, 1, stiffness.values);
     const sizes = state.sizes;
     const powers = this.#model.blocks.flatMap((b) => new Array<number>(b.left.cols).fill(b.power));
     return densePencil(
       mass,
       velocity,
-      displacement,
+      circulatory,
+      stiffness,
       sideBySide(r, this.#left, sizes),
       Uint8Array.from(powers),
       sideBySide(r, this.#right, new Float64Array(sizes.length).fill(1)),
@@ -81,6 +91,7 @@ export function densePencil(
   massMatrix: DenseMatrix,
   velocityMatrix: DenseMatrix,
   displacementMatrix: DenseMatrix,
+  stiffnessMatrix: DenseMatrix,
   inputMatrix: DenseMatrix,
   powers: Uint8Array,
   outputTransposedMatrix: DenseMatrix,
@@ -91,6 +102,7 @@ export function densePencil(
     massMatrix,
     velocityMatrix,
     displacementMatrix,
+    stiffnessMatrix,
     inputMatrix,
     outputTransposedMatrix,
     mass: denseOperator(massMatrix),

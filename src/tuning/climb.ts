@@ -28,6 +28,9 @@ export interface Climbed extends Candidate {
   readonly active: readonly ReadonlyMap<string, number>[];
 }
 
+/** Of the operating points handed over, those lowest at the start are active at first; the exchange adds what matters. */
+const mostStartPoints = 2;
+
 /** Competing peaks followed at each operating point; the rest goes with the nearest of them. */
 const slotsPerPoint = 3;
 
@@ -42,10 +45,16 @@ export async function climb(
   active: readonly ReadonlyMap<string, number>[],
   options: ClimbOptions,
 ): Promise<Climbed> {
-  let points = [...active];
+  let points = lowest(session, start, active, mostStartPoints);
   let x = [...start];
   for (let exchange = 0; ; exchange++) {
-    x = await ascend(session, x, points, options);
+    // After the first solve the active set changes a little, and so does the design.
+    const share = exchange === 0 ? 1 : 0.4;
+    x = await ascend(session, x, points, {
+      ...options,
+      reach: share * options.reach,
+      evaluations: Math.ceil(share * options.evaluations),
+    });
     const design = session.designs.valuesOf(x);
     const known = Math.min(...points.map((at) => session.estimate(design, at).value));
     const worst = session.worstPoints(design, points, "coarse")[0];
@@ -55,6 +64,20 @@ export async function climb(
     }
     points = [...points.filter((at) => !near(session, at, worst.at)), worst.at];
   }
+}
+
+function lowest(
+  session: Session,
+  x: readonly number[],
+  points: readonly ReadonlyMap<string, number>[],
+  most: number,
+): ReadonlyMap<string, number>[] {
+  const design = session.designs.valuesOf(x);
+  return points
+    .map((at) => ({ at, value: session.estimate(design, at).value }))
+    .sort((a, b) => a.value - b.value)
+    .slice(0, most)
+    .map(({ at }) => at);
 }
 
 async function ascend(

@@ -1,5 +1,6 @@
 import { marginAt, type PointMargin, statesAt } from "../margin/point-margin.js";
 import { type Settled, settle, settleDefaults } from "../margin/settle.js";
+import type { Resolution } from "./operating-space.js";
 import type { ReportProgress, Session } from "./session.js";
 
 /** Another operating point that the full model was asked about. */
@@ -53,7 +54,7 @@ export function judge(
   }
 }
 
-/** Full-model margin at one operating point, with the loop's loose tolerance: `rough` for rounds of a search. */
+/** Full-model margin at one operating point to a loose tolerance; only the most critical place is examined. */
 export function settleAt(
   session: Session,
   design: ReadonlyMap<string, number>,
@@ -61,7 +62,11 @@ export function settleAt(
   tolerance: number,
 ): Settled {
   const states = statesAt(session.model, session.valuesAt(design, at));
-  return settle(session.adaptive, session.measure, states, session.setting, { ...settleDefaults, tolerance });
+  return settle(session.adaptive, session.measure, states, session.setting, {
+    ...settleDefaults,
+    tolerance,
+    competing: 1,
+  });
 }
 
 /** Worst operating point on which the reduced and the full model agree. */
@@ -69,11 +74,15 @@ export function settledWorst(
   session: Session,
   design: ReadonlyMap<string, number>,
   known: readonly ReadonlyMap<string, number>[],
+  resolution: Resolution = "fine",
   tolerance = 1e-6,
 ): EnvelopeCheck {
   let best: EnvelopeCheck | undefined;
   for (let round = 0; round < mostRounds; round++) {
-    const found = session.worstPoints(design, best === undefined ? known : [...known, best.at], "fine")[0];
+    const found =
+      best === undefined
+        ? session.worstPoints(design, known, resolution)[0]
+        : session.worstPoints(design, [best.at], "local")[0];
     const slack = tolerance * Math.max(1, Math.abs(found.value));
     if (best !== undefined && found.value >= best.value - slack) break;
     const { value } = settleAt(session, design, found.at, tolerance);
@@ -91,7 +100,7 @@ function checkEnvelope(
   worst: ReadonlyMap<string, number>,
 ): EnvelopeCheck[] {
   if (session.operation.parameters.length === 0) return [];
-  const low = session.worstPoints(design, [], "fine").map((point) => point.at);
+  const low = session.worstPoints(design, [worst], "coarse").map((point) => point.at);
   const corners = session.operation.corners.map((x) => session.operation.valuesOf(x));
   const ranked = corners
     .map((at) => ({ at, value: session.estimate(design, at).value }))

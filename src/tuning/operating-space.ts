@@ -1,4 +1,4 @@
-import { compassDefaults, compassSearch } from "../optimiser/compass-search.js";
+import { compassSearch } from "../optimiser/compass-search.js";
 import type { OperatingParameter, Problem } from "../problem/problem.js";
 
 /** A point of the envelope as seen by a search. */
@@ -6,6 +6,19 @@ export interface OperatingPoint {
   readonly at: ReadonlyMap<string, number>;
   readonly value: number;
 }
+
+/** How hard the envelope is searched: `fine` to judge, `coarse` between two ascents, `local` to follow a known point. */
+export type Resolution = "fine" | "coarse" | "local";
+
+/** Lengths are shares of each range. */
+const effort: Record<
+  Resolution,
+  { spacing: number; minima: number; smallestStep: number; evaluations: number }
+> = {
+  fine: { spacing: 0.25, minima: 2, smallestStep: 0.004, evaluations: 20 },
+  coarse: { spacing: 0.5, minima: 1, smallestStep: 0.03, evaluations: 6 },
+  local: { spacing: 0.1, minima: 1, smallestStep: 0.004, evaluations: 12 },
+};
 
 /** The operating envelope as [0, 1]ⁿ. */
 export class OperatingSpace {
@@ -42,38 +55,36 @@ export class OperatingSpace {
     return [...gridOf(n, [0, 1]), middle];
   }
 
-  /** Coarse scan, a compass search from the lowest local minima of the scan and from known low points, worst first. */
+  /**
+   * Low points of f, worst first: a scan, then a compass search from the lowest local minima of scan and known points.
+   * `local` scans nothing and starts from the known points alone.
+   */
   search(
     f: (at: ReadonlyMap<string, number>) => number,
     known: readonly ReadonlyMap<string, number>[],
-    resolution: "coarse" | "fine",
+    resolution: Resolution,
   ): OperatingPoint[] {
     const n = this.parameters.length;
     if (n === 0) return [{ at: new Map(), value: f(new Map()) }];
     const value = (x: readonly number[]) => f(this.valuesOf(x));
+    const { spacing, minima, smallestStep, evaluations } = effort[resolution];
     const starts = [...this.#scanPoints(resolution), ...known.map((at) => this.unitOf(at))];
     const scanned = starts.map((x) => ({ x, value: value(x) })).sort((a, b) => a.value - b.value);
-    const spacing = resolution === "fine" ? 0.25 : 0.5;
-    const minima: { x: readonly number[]; value: number }[] = [];
+    const lowest: { x: readonly number[]; value: number }[] = [];
     for (const point of scanned) {
-      if (minima.length === (resolution === "fine" ? 3 : 1)) break;
-      const far = minima.every(({ x }) => Math.max(...x.map((xi, i) => Math.abs(xi - point.x[i]))) > spacing);
-      if (far) minima.push(point);
+      const far = lowest.every(({ x }) => Math.max(...x.map((xi, i) => Math.abs(xi - point.x[i]))) > spacing);
+      if (lowest.length < minima && far) lowest.push(point);
     }
-    const options = {
-      ...compassDefaults,
-      step: 0.5 * spacing,
-      smallestStep: resolution === "fine" ? 0.004 : 0.03,
-      maximumEvaluations: resolution === "fine" ? 30 * n : 8 * n,
-    };
-    return minima
+    const options = { step: 0.5 * spacing, smallestStep, maximumEvaluations: evaluations * n };
+    return lowest
       .map((start) => compassSearch(value, start.x, start.value, options))
       .sort((a, b) => a.value - b.value)
       .map((found) => ({ at: this.valuesOf(found.x), value: found.value }));
   }
 
-  #scanPoints(resolution: "coarse" | "fine"): number[][] {
+  #scanPoints(resolution: Resolution): number[][] {
     const n = this.parameters.length;
+    if (resolution === "local") return [];
     if (n > 3) return this.corners;
     if (resolution === "coarse") return gridOf(n, [0, 0.5, 1]);
     return gridOf(n, n === 1 ? [0, 0.125, 0.25, 0.375, 0.5, 0.625, 0.75, 0.875, 1] : [0, 0.25, 0.5, 0.75, 1]);

@@ -3,7 +3,13 @@
  * Infinite or absent values are null. Frequencies in Hz, everything else SI.
  */
 
-export type ResultStatus = "trusted" | "bracket-open" | "untrusted" | "unsound" | "infeasible" | "interrupted";
+export type ResultStatus =
+  | "trusted"
+  | "bracket-open"
+  | "untrusted"
+  | "unsound"
+  | "infeasible"
+  | "interrupted";
 
 export interface MarginResult {
   /** null: there is no limit to be found. */
@@ -95,7 +101,11 @@ export interface CommonResult {
   readonly doubts: readonly string[];
   readonly warnings: readonly string[];
   readonly cautions: readonly string[];
-  readonly model: { readonly dofs: number; readonly modesCounted: number | null; readonly searchedToHz: number | null };
+  readonly model: {
+    readonly dofs: number;
+    readonly modesCounted: number | null;
+    readonly searchedToHz: number | null;
+  };
   readonly effort: EffortResult;
   readonly inputs: readonly { readonly path: string; readonly sha256: string; readonly bytes: number }[];
 }
@@ -111,7 +121,10 @@ export interface MarginCommandResult extends CommonResult, JudgedDesign {
     readonly evaluations: number;
     readonly frequenciesHz: readonly number[];
     /** Full-model margins at other operating points. */
-    readonly envelope: readonly { readonly at: Readonly<Record<string, number>>; readonly value: number | null }[];
+    readonly envelope: readonly {
+      readonly at: Readonly<Record<string, number>>;
+      readonly value: number | null;
+    }[];
     readonly levelSetClean: boolean;
   };
   readonly balance: readonly BalanceRow[];

@@ -75,7 +75,7 @@ export async function confirmRounds(
     if (best !== undefined && top.value <= best.worst.value + slack) return { best, history, agreed: true };
     progress({ stage: "confirming on the full model", done: round, total: rounds });
     const design = designs.valuesOf(top.x);
-    const worst = settledWorst(session, design, top.active, tolerance);
+    const worst = settledWorst(session, design, top.active, "coarse", tolerance);
     const { complex, real } = adaptive.full.counts;
     history.push({
       round,
@@ -91,7 +91,7 @@ export async function confirmRounds(
       best = { x: top.x, worst, active };
       reportBest(design, worst);
     }
-    const others = pool.slice(1, round === 0 ? 3 : 2).map((candidate) => candidate.x);
+    const others = pool.slice(1, 2).map((candidate) => candidate.x);
     const next = [best.x, ...(top.x === best.x ? [] : [top.x]), ...others];
     pool = await climbAll(session, next, active, { ...laterClimb, tolerance }, progress);
   }

@@ -4,8 +4,9 @@ import { measureOf, settingOf, statesAt } from "../margin/point-margin.js";
 import { buildModel, type ParametricModel, stateAt, type Values } from "../model/parametric-model.js";
 import type { Problem, TermGroup } from "../problem/problem.js";
 import { AdaptiveModel } from "../reduction/adaptive-model.js";
+import { truncateModes } from "../reduction/modal-truncation.js";
 import { DesignSpace } from "./design-space.js";
-import { type OperatingPoint, OperatingSpace } from "./operating-space.js";
+import { type OperatingPoint, OperatingSpace, type Resolution } from "./operating-space.js";
 
 /** What a command tells while it works. */
 export interface Progress {
@@ -27,6 +28,8 @@ export class Session {
   readonly designs: DesignSpace;
   readonly operation: OperatingSpace;
   reducedEvaluations = 0;
+  /** Real modes of the reduced model are kept up to here [rad/s] while searching; null keeps all. */
+  readonly #searchReach: number | null;
 
   /** @param design - the design at which the start basis is made. */
   constructor(problem: Problem, design: ReadonlyMap<string, number>) {
@@ -40,24 +43,31 @@ export class Session {
     this.adaptive = new AdaptiveModel(full, stateAt(this.model, nominal), upper);
     this.measure = measureOf(problem.margin);
     this.setting = settingOf(problem.margin, this.adaptive);
+    // Modes that differ along the multiplier would give the two ends of the path different bases.
+    const rigid = this.model.terms.every((term) => !term.multiplied || !structural.has(term.group));
+    this.#searchReach = upper === null || this.adaptive.exact || !rigid ? null : 1.05 * upper;
   }
 
   valuesAt(design: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>): Values {
     return new Map([...this.problem.constants, ...design, ...at]);
   }
 
-  /** The reduced model's word at one design and operating point. */
+  /** The reduced model's word at one design and operating point, by its modes in the band only: for searching. */
   estimate(design: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>): Estimate {
     this.reducedEvaluations++;
     const states = statesAt(this.model, this.valuesAt(design, at));
-    return this.measure.estimate((multiplier) => this.adaptive.reducedAt(states(multiplier)), this.setting);
+    const pencilAt = (multiplier: number) => {
+      const pencil = this.adaptive.reducedAt(states(multiplier));
+      return this.#searchReach === null ? pencil : truncateModes(pencil, this.#searchReach);
+    };
+    return this.measure.estimate(pencilAt, this.setting);
   }
 
   /** Worst operating points of a design by the reduced model, worst first. */
   worstPoints(
     design: ReadonlyMap<string, number>,
     known: readonly ReadonlyMap<string, number>[],
-    resolution: "coarse" | "fine",
+    resolution: Resolution,
   ): OperatingPoint[] {
     return this.operation.search((at) => this.estimate(design, at).value, known, resolution);
   }
@@ -83,8 +93,9 @@ export class Session {
   }
 }
 
+const structural: ReadonlySet<TermGroup> = new Set(["mass", "stiffness"]);
+
 function structuralNames(model: ParametricModel): Set<string> {
-  const structural: ReadonlySet<TermGroup> = new Set(["mass", "stiffness"]);
   return new Set(
     model.terms.filter((term) => structural.has(term.group)).flatMap((term) => term.factor.names),
   );

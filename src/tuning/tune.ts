@@ -68,7 +68,7 @@ export async function tune(
   const starts = await climbAll(
     session,
     screened.map(({ x }) => x),
-    points.slice(0, 3),
+    points,
     { ...firstClimb, tolerance: options.tolerance },
     progress,
   );

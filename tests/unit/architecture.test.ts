@@ -30,7 +30,7 @@ const allowed: Record<string, readonly string[]> = {
 };
 
 const files = readdirSync("src", { recursive: true, encoding: "utf8" }).filter((f) => f.endsWith(".ts"));
-const roomOf = (file: string) => file.split(sep)[0]!.replace(/\.ts$/, "");
+const roomOf = (file: string) => file.split(sep)[0]!.replace(/\.[jt]s$/, "");
 
 it("imports point only to folders earlier in the house", () => {
   const strays = files.flatMap((file) =>

@@ -1,8 +1,8 @@
 import { NumericalError } from "../../errors.js";
 import { eigen, eigenvalues } from "./eigen.js";
+import { factorDense } from "./lu.js";
 import type { ComplexMatrix, DenseMatrix } from "./matrix.js";
 import { complexZeros, zeros } from "./matrix.js";
-import { factorDense } from "./lu.js";
 
 /**
  * Eigenvalues λ of P(s) = s²M + sC + S (real n×n, M may be singular) in the form that
@@ -41,7 +41,12 @@ export function quadraticEigenvalues(
 }
 
 /** Values and both sets of vectors. Throws `NumericalError` when no real shift makes P(s₀) regular. */
-export function quadraticEigen(m: DenseMatrix, c: DenseMatrix, s: DenseMatrix, shift: number): QuadraticEigen {
+export function quadraticEigen(
+  m: DenseMatrix,
+  c: DenseMatrix,
+  s: DenseMatrix,
+  shift: number,
+): QuadraticEigen {
   const n = m.rows;
   const { companion, inverse, shift: used } = shiftedCompanion(m, c, s, shift);
   const { re: thetaRe, im: thetaIm, right, left } = eigen(companion);

@@ -1,0 +1,140 @@
+import type { Problem } from "../problem/problem.js";
+import { type Judgement, judge, settledWorst } from "./judge.js";
+import type { MarginCommandResult, TuneCommandResult } from "./result.js";
+import { judgedDesign, marginResult, otherMeasures, recordOf } from "./result-builder.js";
+import { type ReportProgress, Session } from "./session.js";
+import { type Tuned, tune, tuneDefaults } from "./tune.js";
+
+export interface CommandContext {
+  readonly version: string;
+  readonly progress: ReportProgress;
+  /** Called with a complete result object whenever a better one exists. */
+  readonly snapshot: (result: MarginCommandResult | TuneCommandResult) => void;
+}
+
+export interface MarginOptions {
+  /** Design values that differ from the start values. */
+  readonly design?: ReadonlyMap<string, number>;
+  /** Operating values to judge at; those not named stay nominal. Without it the envelope is searched. */
+  readonly at?: ReadonlyMap<string, number>;
+}
+
+export interface TuneCommandOptions {
+  /** Default: the problem file's. */
+  readonly seed?: number;
+  /** Start values that differ from the file's. */
+  readonly design?: ReadonlyMap<string, number>;
+}
+
+/** The worst vector on the dofs of the problem file (fixed ones left out). */
+export interface WorstVector {
+  /** Counted from 1, as in the file. */
+  readonly dofs: Int32Array;
+  readonly re: Float64Array;
+  readonly im: Float64Array;
+}
+
+/** The smallest margin of one design over the envelope, or at one operating point, with its evidence. */
+export function computeMargin(
+  problem: Problem,
+  options: MarginOptions,
+  context: CommandContext,
+): { result: MarginCommandResult; vectors: WorstVector | null } {
+  const began = Date.now();
+  context.progress({ stage: "building the model and its real modes", done: 0, total: null });
+  const design = startDesign(problem, options.design);
+  const session = new Session(problem, design);
+  session.addExtremeSamples(design, false);
+  const at = options.at === undefined ? undefined : new Map([...session.operation.nominal, ...options.at]);
+  const judgement = judge(session, design, at, [], context.progress);
+  context.progress({ stage: "the other measures", done: 0, total: null });
+  const result = {
+    ...marginResult(session, context.version, design, judgement, began, null),
+    measures: otherMeasures(session, design, judgement.at),
+  };
+  context.snapshot(result);
+  return { result, vectors: worstVector(session, judgement) };
+}
+
+/** The best design within the limits, its margin settled on the full model, beside the start design. */
+export async function tuneProblem(
+  problem: Problem,
+  options: TuneCommandOptions,
+  context: CommandContext,
+): Promise<{ result: TuneCommandResult; vectors: WorstVector | null }> {
+  const began = Date.now();
+  context.progress({ stage: "building the model and its real modes", done: 0, total: null });
+  const design = startDesign(problem, options.design);
+  const started = withStart(problem, design);
+  const session = new Session(started, design);
+  const seed = options.seed ?? problem.tune.seed;
+  context.progress({ stage: "judging the start design", done: 0, total: null });
+  const worst = settledWorst(session, design, []);
+  const before = judgedDesign(session, design, judge(session, design, worst.at, [], context.progress));
+  const complete = (design: ReadonlyMap<string, number>, judgement: Judgement, tuned: Partial<Tuned>) => ({
+    ...marginResult(
+      session,
+      context.version,
+      design,
+      judgement,
+      began,
+      tuned.factorisationsBeforeAudit ?? null,
+    ),
+    command: "tune" as const,
+    measures: {},
+    seed,
+    before,
+    history: (tuned.history ?? []).map((row) => ({
+      ...row,
+      design: recordOf(row.design),
+      at: recordOf(row.at),
+    })),
+    starts: (tuned.starts ?? []).map(({ x, value }) => ({
+      value,
+      design: recordOf(session.designs.valuesOf(x)),
+    })),
+    rounded: session.designs.isStepped,
+  });
+  const tuned = await tune(
+    session,
+    worst,
+    { ...tuneDefaults, seed, tolerance: problem.tune.tolerance },
+    context.progress,
+    (better, found) => {
+      const judgement = judge(session, better, found.at, [], () => undefined);
+      context.snapshot({ ...complete(better, judgement, {}), status: "interrupted" });
+    },
+  );
+  const result: TuneCommandResult = {
+    ...complete(tuned.design, tuned.judgement, tuned),
+    measures: otherMeasures(session, tuned.design, tuned.judgement.at),
+  };
+  const final = finished(result, tuned);
+  context.snapshot(final);
+  return { result: final, vectors: worstVector(session, tuned.judgement) };
+}
+
+function finished(result: TuneCommandResult, tuned: Tuned): TuneCommandResult {
+  const doubts = [...result.doubts, ...tuned.doubts];
+  const status = tuned.infeasible ? "infeasible" : doubts.length > 0 ? "untrusted" : result.status;
+  return { ...result, doubts, status };
+}
+
+function startDesign(
+  problem: Problem,
+  changes: ReadonlyMap<string, number> | undefined,
+): Map<string, number> {
+  return new Map([...problem.design.map(({ name, start }) => [name, start] as const), ...(changes ?? [])]);
+}
+
+/** The problem with other start values, so that the search and its report speak of the same start. */
+function withStart(problem: Problem, design: ReadonlyMap<string, number>): Problem {
+  return { ...problem, design: problem.design.map((v) => ({ ...v, start: design.get(v.name) ?? v.start })) };
+}
+
+function worstVector(session: Session, judgement: Judgement): WorstVector | null {
+  const { witness } = judgement.point;
+  if (witness === undefined) return null;
+  const { re, im } = witness.vector;
+  return { dofs: session.model.freeDofs.map((dof) => dof + 1), re, im };
+}
