@@ -51,6 +51,25 @@ function build(
   return { name, a, im: fromTriplets(n, n, rows, cols, im).values };
 }
 
+/** The same positions with values multiplied by 10^u, u from −3 to 3; no diagonal is zero any more. */
+function uneven(base: SparseCase, random: () => number, symmetric: boolean): SparseCase {
+  const { a, im } = base;
+  const factorOf = new Map<number, number>();
+  const values = a.values.slice();
+  const imaginary = im.slice();
+  for (let j = 0; j < a.cols; j++) {
+    for (let p = a.colStart[j]!; p < a.colStart[j + 1]!; p++) {
+      const i = a.rowIndex[p]!;
+      const key = symmetric ? Math.min(i, j) + Math.max(i, j) * a.cols : i + j * a.cols;
+      const factor = factorOf.get(key) ?? 10 ** (6 * random() - 3);
+      factorOf.set(key, factor);
+      values[p] = values[p]! * factor + (i === j ? 1e-4 : 0);
+      imaginary[p] = imaginary[p]! * factor;
+    }
+  }
+  return { name: base.name, a: { ...a, values }, im: imaginary };
+}
+
 /** Awkward structures of order up to 45: chains, constraints, arrows, loose parts, wild scales, zero diagonals. */
 export function awkwardCase(seed: number, symmetric: boolean): SparseCase {
   const random = uniform(seed);
@@ -61,7 +80,7 @@ export function awkwardCase(seed: number, symmetric: boolean): SparseCase {
   const one = (): number => 1;
   const never = (): boolean => false;
   const wild = Array.from({ length: n }, () => 10 ** (12 * random() - 6));
-  switch (seed % 7) {
+  switch (seed % 8) {
     case 0:
       return build("scattered", n, some, never, one, random, symmetric);
     case 1:
@@ -110,6 +129,12 @@ export function awkwardCase(seed: number, symmetric: boolean): SparseCase {
         random,
         symmetric,
       );
+    case 6: {
+      // Entries of very different size without any scaling behind them: many refused pivots.
+      const blocks = some.map(([i, j]) => [i, Math.min(n - 1, i + (j % 5))] as const);
+      const base = build("uneven entries", n, blocks, (i) => n > 1 && i % 3 === 0, one, random, symmetric);
+      return uneven(base, random, symmetric);
+    }
     default: {
       const all = Array.from({ length: n * n }, (_, t) => [t % n, Math.floor(t / n)] as const);
       return build(

@@ -79,6 +79,46 @@ describe("elimination orders", () => {
   });
 });
 
+/** A grid of width × length nodes whose neighbours touch by side or corner. */
+function gridGraph(width: number, length: number): Graph {
+  const rows: number[] = [];
+  const cols: number[] = [];
+  for (let x = 0; x < width; x++) {
+    for (let y = 0; y < length; y++) {
+      for (let u = Math.max(0, x - 1); u <= Math.min(width - 1, x + 1); u++) {
+        for (let v = Math.max(0, y - 1); v <= Math.min(length - 1, y + 1); v++) {
+          rows.push(u * length + v);
+          cols.push(x * length + y);
+        }
+      }
+    }
+  }
+  const n = width * length;
+  return nodeGraph(fromTriplets(n, n, rows, cols, rows), Int32Array.from(numbers(n))).graph;
+}
+
+describe("nested dissection", () => {
+  it("eliminates a vertex that touches all others last", () => {
+    const n = 3000;
+    const others = numbers(n).slice(1);
+    const hub = others.map(() => 0);
+    const rows = [...numbers(n), ...hub, ...others];
+    const cols = [...numbers(n), ...others, ...hub];
+    const { graph } = nodeGraph(fromTriplets(n, n, rows, cols, rows));
+    expect(nestedDissection(graph)[n - 1]).toBe(0);
+  });
+
+  it("needs fewer operations than minimum degree on a wide grid and more on some narrow one", () => {
+    const wide = gridGraph(60, 60);
+    const operations = (graph: Graph, order: Int32Array) => supernodeTree(graph, order).operations;
+    expect(operations(wide, nestedDissection(wide))).toBeLessThan(operations(wide, minimumDegree(wide)));
+    const narrow = gridGraph(3, 700);
+    expect(operations(narrow, minimumDegree(narrow))).toBeLessThan(
+      operations(narrow, nestedDissection(narrow)),
+    );
+  });
+});
+
 describe("a vertex separator", () => {
   it("lets no edge join the two parts, balances them and is about one grid line", () => {
     const graph = graphOf(40);

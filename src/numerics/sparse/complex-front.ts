@@ -50,6 +50,7 @@ export function eliminateComplexFront(front: ComplexFront, rule: PivotRule): Eli
 class FrontElimination {
   private readonly front: ComplexFront;
   private readonly rule: PivotRule;
+  /** Only negligible columns are left in a root. */
   private forced = false;
   private perturbed = 0;
   /** The columns from here to the end of the current panel have no acceptable pivot. */

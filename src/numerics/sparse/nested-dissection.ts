@@ -13,7 +13,7 @@ import { SEPARATOR, vertexSeparator } from "./vertex-separator.js";
 /** Parts up to this many vertices are ordered by minimum degree. */
 const SMALL_PART = 200;
 
-/** The vertices in the order of their elimination. Vertices of outstanding degree come last. */
+/** The vertices in the order of their elimination. */
 export function nestedDissection(graph: Graph): Int32Array {
   return new Dissection(graph).order();
 }
@@ -31,13 +31,7 @@ class Dissection {
   }
 
   order(): Int32Array {
-    const { order, start } = this.graph;
-    const outstanding = Math.max(16, 10 * Math.sqrt(order));
-    const usual: number[] = [];
-    const dense: number[] = [];
-    for (let v = 0; v < order; v++) (start[v + 1] - start[v] > outstanding ? dense : usual).push(v);
-    this.dissect(Int32Array.from(usual));
-    this.append(dense);
+    this.dissect(Int32Array.from({ length: this.graph.order }, (_, v) => v));
     return this.result;
   }
 

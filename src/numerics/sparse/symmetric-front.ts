@@ -53,6 +53,8 @@ class SymmetricFrontElimination {
   private readonly before: Float64Array;
   /** The columns from here to the end of the current panel have no acceptable pivot. */
   private rejectedFrom = 0;
+  /** A root in which no column was accepted starts its next panel with the largest entry. */
+  private forced = false;
   private perturbed = 0;
 
   constructor(front: SymmetricFront, rule: PivotRule) {
@@ -71,7 +73,8 @@ class SymmetricFrontElimination {
     while (done < summed) {
       if (done >= candidatesEnd) {
         if (!advanced && !this.rule.isRoot) break;
-        if (!advanced) this.bringLargestFirst(done);
+        this.forced = !advanced;
+        if (this.forced) this.bringLargestFirst(done);
         candidatesEnd = summed;
         advanced = false;
       }
@@ -136,7 +139,8 @@ class SymmetricFrontElimination {
       this.swap(k + 1, partner);
       if (this.acceptsPair(k)) return 2;
     }
-    return diagonal >= THRESHOLD * offDiagonal ? 1 : REJECT;
+    // The largest entry is refused only when it is not finite; the solve will report that.
+    return diagonal >= THRESHOLD * offDiagonal || (this.forced && current) ? 1 : REJECT;
   }
 
   private largestBelow(k: number, from: number): number {
