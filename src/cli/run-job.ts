@@ -23,17 +23,23 @@ export interface Output {
 
 const workerScript = new URL("./worker.js", import.meta.url);
 
-/** Computes an answer in a thread of its own, writes its files, prints it, and tells the exit status. */
-export async function runJob(request: JobRequest, output: Output): Promise<number> {
+/**
+ * Computes an answer in a thread of its own, writes its files, prints it, and tells the exit status. Interrupted, it
+ * leaves the best answer so far.
+ */
+export async function runJob(
+  request: JobRequest,
+  output: Output,
+  script: URL = workerScript,
+): Promise<number> {
   let opened: Opened = { title: basename(request.problem, ".json"), inputs: [], units: new Map() };
   let best: CommandResult | undefined;
   const folder = (): string => output.out ?? resultsFolder(request, opened.inputs);
   if (output.vectors !== undefined) makeFolderOf(output.vectors);
-  if (output.out !== undefined) makeFolder(output.out);
   const display = progressDisplay(output.quiet);
   let done: JobDone | null;
   try {
-    done = await supervise(workerScript, request, {
+    done = await supervise(script, request, {
       opened: (found) => {
         opened = found;
         makeFolder(folder());

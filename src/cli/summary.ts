@@ -8,6 +8,6 @@ import type { CommandResult, EmptyResult } from "./job.js";
 export function summaryText(result: CommandResult | EmptyResult, units: Units): string {
   if ("before" in result) return tuneText(result, units);
   if ("margin" in result) return marginText(result, units);
-  if ("effort" in result) return checkText(result);
+  if ("effort" in result) return checkText(result, units);
   return `${result.title}\nINTERRUPTED before a first answer was known\n`;
 }

@@ -11,6 +11,7 @@ import {
   leastDampedText,
   limitText,
   marginValue,
+  measuresText,
   measureText,
   remarkRows,
   stabilityText,
@@ -42,18 +43,6 @@ export function marginText(result: MarginCommandResult, units: Units): string {
     ...remarkRows(result),
   ];
   return page([headLines(result), labelledLines([...answer, ...state, ...work]), cautionLines(result)]);
-}
-
-const measureNames: ReadonlyMap<string, string> = new Map([
-  ["radius", "stability radius"],
-  ["multiplier", "critical multiplier"],
-  ["dampingRatio", "damping ratio"],
-]);
-
-function measuresText({ measures }: MarginCommandResult): string {
-  return Object.entries(measures)
-    .map(([name, value]) => `${measureNames.get(name) ?? name} ${numberText(value)}`)
-    .join(", ");
 }
 
 function searchedText({ model: { modesCounted, searchedToHz } }: MarginCommandResult): string {

@@ -46,6 +46,19 @@ export function measureText({ measure, kind, lowerBound }: MarginResult): string
   return `${kind ?? ""} stability radius${bound}`.trimStart();
 }
 
+const measureNames: ReadonlyMap<string, string> = new Map([
+  ["radius", "stability radius"],
+  ["multiplier", "critical multiplier"],
+  ["dampingRatio", "damping ratio"],
+]);
+
+/** The measures beside the leading one. */
+export function measuresText({ measures }: MarginCommandResult): string {
+  return Object.entries(measures)
+    .map(([name, value]) => `${measureNames.get(name) ?? name} ${numberText(value)}`)
+    .join(", ");
+}
+
 /** "target 1 reached" or "target 1 missed"; empty without a target. */
 export function targetText({ target, meetsTarget }: MarginResult): string {
   if (target === null || meetsTarget === null) return "";

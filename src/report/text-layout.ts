@@ -28,6 +28,11 @@ export function labelledLines(rows: readonly (readonly [label: string, text: str
   );
 }
 
+/** At most `width` characters: a longer name loses its end. */
+export function clip(text: string, width: number): string {
+  return text.length <= width ? text : `${text.slice(0, width - 1)}…`;
+}
+
 /** Cells in columns as wide as their widest cell, two blanks apart. */
 export function columnLines(rows: readonly (readonly string[])[]): string[] {
   const columns = Math.max(0, ...rows.map((row) => row.length));
@@ -37,9 +42,12 @@ export function columnLines(rows: readonly (readonly string[])[]): string[] {
   return rows.map((row) => (indent + row.map((cell, j) => cell.padEnd(widths[j] + 2)).join("")).trimEnd());
 }
 
-/** Blocks of lines with an empty line between them, no-break spaces made plain; empty blocks are left out. */
+/**
+ * Blocks of lines with an empty line between them; empty blocks are left out, no-break spaces made plain. Control
+ * characters, which could come from a title and drive the reader's terminal, become spaces.
+ */
 export function page(blocks: readonly (readonly string[])[]): string {
   const shown = blocks.filter((block) => block.length > 0);
-  const text = shown.map((block) => block.join("\n")).join("\n\n");
-  return `${text.replaceAll(noBreak, " ")}\n`;
+  const plain = (line: string): string => line.replace(/\p{Cc}/gu, " ").replaceAll(noBreak, " ");
+  return `${shown.map((block) => block.map(plain).join("\n")).join("\n\n")}\n`;
 }

@@ -9,13 +9,16 @@ import {
   type LabelledText,
   leastDampedText,
   marginValue,
+  measuresText,
   measureText,
   remarkRows,
   stabilityText,
   targetText,
   type Units,
 } from "./result-lines.js";
-import { columnLines, labelledLines, page } from "./text-layout.js";
+import { clip, columnLines, labelledLines, page } from "./text-layout.js";
+
+const nameWidth = 28;
 
 /** The summary that `tune` prints: the start and the tuned design side by side, how sure it is, what it took. */
 export function tuneText(result: TuneCommandResult, units: Units): string {
@@ -29,6 +32,7 @@ export function tuneText(result: TuneCommandResult, units: Units): string {
   const rows: LabelledText[] = [
     ["margin", measureText(margin)],
     ["between", betweenText(margin)],
+    ["also", measuresText(result)],
     ["stability", stabilityText(unperturbed)],
     ["least damped", leastDampedText(unperturbed)],
     ["starts", startsText(result)],
@@ -55,7 +59,11 @@ function answerRows(before: JudgedDesign, after: JudgedDesign, units: Units): st
     both("breaks at", ({ margin: { breaksAtHz } }) => numberText(breaksAtHz), "Hz"),
     both("by", ({ margin: { loss } }) => loss ?? "none"),
     ...points.map((name) =>
-      both(name, ({ margin: { at } }) => numberText(at[name] ?? null), worstNote(units.get(name))),
+      both(
+        clip(name, nameWidth),
+        ({ margin: { at } }) => numberText(at[name] ?? null),
+        worstNote(units.get(name)),
+      ),
     ),
     both("unstable", ({ unperturbed: { unstable } }) => String(unstable), "eigenvalues"),
   ];
@@ -67,7 +75,7 @@ function worstNote(unit: string | undefined): string {
 
 function designRows(before: JudgedDesign, after: JudgedDesign, units: Units): string[][] {
   return Object.keys(after.design).map((name) => [
-    name,
+    clip(name, nameWidth),
     numberText(before.design[name] ?? null),
     numberText(after.design[name]),
     units.get(name) ?? "",
@@ -78,7 +86,7 @@ function budgetRows(before: JudgedDesign, after: JudgedDesign): string[][] {
   return Object.entries(after.budget).map(([name, { used, limit, unit }]) => {
     const first = before.budget[name];
     return [
-      name,
+      clip(name, nameWidth),
       first === undefined ? "none" : numberText(first.used),
       numberText(used),
       `of ${withUnit(numberText(limit), unit)}`,
