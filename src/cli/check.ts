@@ -10,7 +10,7 @@ export const checkCommand = (): Command => {
         "model is stable by structure without its feeding terms.",
     )
     .argument("<problem>", "problem file (JSON)")
-    .addHelpText("after", "\nExample:\n  dampwright check problems/ring-brake.json")
+    .addHelpText("after", "\nExample:\n  dampwright check ring-brake/ring-brake.json")
     .action((problem: string, options: GivenOptions) => runCommand("check", problem, options));
   for (const option of outputOptions()) command.addOption(option);
   return command;

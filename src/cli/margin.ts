@@ -18,8 +18,8 @@ export const marginCommand = (): Command => {
       "after",
       `
 Examples:
-  dampwright margin problems/ring-brake.json
-  dampwright margin problems/ring-brake.json --at friction=0.5,pressure=1.2 --set bushOdd=900`,
+  dampwright margin ring-brake/ring-brake.json
+  dampwright margin ring-brake/ring-brake.json --at friction=0.5,pressure=1.2 --set bushOdd=900`,
     )
     .action((problem: string, options: GivenOptions) => runCommand("margin", problem, options));
   const options = [atOption(), ...designOptions(), vectorsOption(), ...outputOptions()];

@@ -21,8 +21,8 @@ export const tuneCommand = (): Command => {
       "after",
       `
 Examples:
-  dampwright tune problems/ring-brake.json
-  dampwright tune problems/ring-brake.json --seed 7 --out results/seventh`,
+  dampwright tune ring-brake/ring-brake.json
+  dampwright tune ring-brake/ring-brake.json --seed 7 --out results/seventh`,
     )
     .action((problem: string, options: GivenOptions) => runCommand("tune", problem, options));
   const options = [seedOption(), ...designOptions(), vectorsOption(), ...outputOptions()];

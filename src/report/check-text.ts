@@ -52,7 +52,7 @@ function undampedText({ stability }: CheckResult): string {
 }
 
 function sizeText({ sizes: { dofs, fixed, free, nonzeros } }: CheckResult): string {
-  return `${counted(dofs, "dof")}, ${fixed} fixed, ${free} free, ${nonzeros} places in the merged pattern`;
+  return `${counted(dofs, "dof")}, ${fixed} fixed, ${free} free, ${counted(nonzeros, "place")} in the merged pattern`;
 }
 
 function definitenessText({ verdict, negative, at, proved }: DefinitenessRow, units: Units): string {
