@@ -5,7 +5,7 @@ import { channelGain } from "./channel-gain.js";
 import { type DecayKind, decayOf } from "./decay.js";
 import { realDirections, type Setting } from "./measure.js";
 import { nearbyEigenvalues } from "./nearby-eigenvalues.js";
-import { findPeaks, gainFunction } from "./peaks.js";
+import { findPeaks, gainFunction, peakDefaults } from "./peaks.js";
 import { spectralForm } from "./spectral-form.js";
 
 /** Full-model evaluations at places the greedy loop did not use. It gives trust, not proof. */
@@ -33,7 +33,7 @@ export function auditRadius(
 ): Audit {
   const form = spectralForm(adaptive.reducedAt(state), setting.shift);
   const gain = gainFunction(form);
-  const lowPeaks = findPeaks(form, setting.band, { screen: 0.02, keep: 0.05, extra: [] }).map(
+  const lowPeaks = findPeaks(form, setting.band, { ...peakDefaults, screen: 0.02, keep: 0.05 }).map(
     (peak) => peak.omega,
   );
   const count = Math.max(leastEvaluations, used.length);

@@ -73,7 +73,8 @@ function quotient(f: ComplexVector, y: ComplexVector, thetaRe: number, thetaIm: 
   return [(re * thetaRe + im * thetaIm) / size, (im * thetaRe - re * thetaIm) / size];
 }
 
-function blend(without: DensePencil, unit: DensePencil, alpha: number): DensePencil {
+/** (1 − α) P₀ + α P₁. */
+export function blend(without: DensePencil, unit: DensePencil, alpha: number): DensePencil {
   const mix = (a: DenseMatrix, b: DenseMatrix): DenseMatrix => ({
     rows: a.rows,
     cols: a.cols,
@@ -105,9 +106,10 @@ export function staysStable(from: PathSection, to: PathSection): boolean {
     const errorRe = b.re - a.re - 0.5 * h * (a.slopeRe + b.slopeRe);
     const errorIm = b.im - a.im - 0.5 * h * (a.slopeIm + b.slopeIm);
     const room = Math.max(Math.max(-a.re, -b.re), 1e-4 * Math.hypot(a.re, a.im));
-    return (
-      Math.hypot(errorRe, errorIm) <= 0.5 * room && highestOfCubic(a, b, h) <= 1e-9 * Math.hypot(a.re, a.im)
-    );
+    // The frequency only has to tell that both are the same mode; the real part decides.
+    const size = Math.hypot(a.re, a.im);
+    const sameMode = Math.abs(errorIm) <= Math.max(room, 2e-3 * size);
+    return sameMode && Math.abs(errorRe) <= 0.5 * room && highestOfCubic(a, b, h) <= 1e-9 * size;
   });
 }
 

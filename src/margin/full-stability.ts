@@ -47,9 +47,7 @@ export function judgeStability(
   reduced: { readonly re: Float64Array; readonly im: Float64Array },
 ): StabilityVerdict {
   const reach = outsideReach * setting.band.high;
-  const all: Eigenvalue[] = Array.from(reduced.re, (re, j) => ({ re, im: reduced.im[j] })).filter(
-    ({ im }) => im <= reach,
-  );
+  const all = eigenvalueList(reduced).filter(({ im }) => im <= reach);
   if (adaptive.exact) return verdictOf(all, [], setting, all.filter(isSuspect(setting)).length, 0);
   const suspects = all.filter(isSuspect(setting)).sort((a, b) => a.im - b.im);
   const { neighbourhoods, open } = coverSuspects(adaptive, state, setting, suspects);
@@ -97,7 +95,19 @@ function coverSuspects(
   return { neighbourhoods, open };
 }
 
-function verdictOf(
+/** Two arrays as a list. */
+export function eigenvalueList({
+  re,
+  im,
+}: {
+  readonly re: Float64Array;
+  readonly im: Float64Array;
+}): Eigenvalue[] {
+  return Array.from(re, (value, j) => ({ re: value, im: im[j] }));
+}
+
+/** Counts and extremes of a list of eigenvalues with Im ≥ 0. */
+export function verdictOf(
   eigenvalues: readonly Eigenvalue[],
   missed: readonly NearbyEigenvalue[],
   setting: Setting,

@@ -5,6 +5,7 @@ import type { Band } from "./band.js";
 import type { ChannelGain } from "./channel-gain.js";
 import type { Crossing } from "./crossing.js";
 import type { Eigenpair } from "./eigenpair.js";
+import type { PeakOptions } from "./peaks.js";
 
 /** Where and on what scale a margin is judged; the same for the full and the reduced model. */
 export interface Setting {
@@ -13,8 +14,7 @@ export interface Setting {
   readonly shift: number;
   /** ω_ref [rad/s] that makes a growth dimensionless. */
   readonly omegaRef: number;
-  /** Frequencies [rad/s] at which peaks are known to hide from the search by poles. */
-  readonly hints: readonly number[];
+  readonly peaks: PeakOptions;
 }
 
 /** One place where the margin may be decided, as a reduced model sees it. */

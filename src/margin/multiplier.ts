@@ -2,7 +2,7 @@ import type { Pencil } from "../model/pencil.js";
 import type { ComplexVector } from "../numerics/dense/matrix.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
 import { refineCrossing } from "./crossing.js";
-import { type PathPoint, type PathSection, sectionAt, staysStable } from "./eigenvalue-path.js";
+import { blend, type PathPoint, type PathSection, sectionAt, staysStable } from "./eigenvalue-path.js";
 import {
   type Checked,
   type Critical,
@@ -19,6 +19,9 @@ export const highestMultiplier = 1000;
 /** Smallest step of the path, relative to the multiplier reached. */
 const smallestStep = 1e-3;
 
+/** Relative width to which a crossing is bracketed before it is polished. */
+const coarse = 1e-3;
+
 function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Setting): Estimate {
   const without = pencilAt(0);
   const unit = pencilAt(1);
@@ -33,49 +36,90 @@ function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Settin
     return { value: 0, criticals: [asCritical("eigenvalue", 0, start.leading)], eigenvalues };
   const found = firstCrossing(start, sections);
   if (found === null) return { value: Number.POSITIVE_INFINITY, criticals: [], eigenvalues };
-  const { alpha, leading } = found;
-  return { value: alpha, criticals: [asCritical("crossing", alpha, leading)], eigenvalues };
+  const critical = polished(found, (alpha) => blend(without, unit, alpha), sections, setting);
+  return { value: critical.value, criticals: [critical], eigenvalues };
 }
 
-/** The first section on the path that is unstable, pinched down to rounding; null when there is none. */
-function firstCrossing(start: PathSection, sectionOf: (alpha: number) => PathSection): PathSection | null {
+/** Last stable and first unstable section around the first crossing, not yet polished. */
+type Bracket = readonly [PathSection, PathSection];
+
+/** The first crossing on the path, bracketed coarsely; null when there is none. */
+function firstCrossing(start: PathSection, sectionOf: (alpha: number) => PathSection): Bracket | null {
   let from = start;
   let step = 0.125;
   while (from.alpha < highestMultiplier) {
     const floor = smallestStep * Math.max(from.alpha, 0.05);
     const to = sectionOf(from.alpha + step);
-    const [stable, unstable] = to.unstable ? pinch(from, to, sectionOf) : [to, null];
+    const bracket = to.unstable ? pinch([from, to], sectionOf, coarse) : null;
+    const stable = bracket === null ? to : bracket[0];
     if (!staysStable(from, stable) && stable.alpha - from.alpha > floor) {
       step = 0.5 * (stable.alpha - from.alpha);
       continue;
     }
-    if (unstable !== null) return unstable;
+    if (bracket !== null) return bracket;
     from = to;
     step *= 2;
   }
   return null;
 }
 
-/** The crossing between a stable and an unstable section, pinched to rounding: [last stable, first unstable]. */
+/** Narrows a bracket to the given relative width: Newton steps along the leading path, halving in between. */
 function pinch(
-  stable: PathSection,
-  unstable: PathSection,
+  [stable, unstable]: Bracket,
   sectionOf: (alpha: number) => PathSection,
-): [PathSection, PathSection] {
+  width: number,
+): Bracket {
   let [low, high] = [stable, unstable];
   let latest = unstable;
-  for (let iteration = 0; iteration < 60 && high.alpha - low.alpha > 1e-11 * high.alpha; iteration++) {
-    const guess = newtonGuess(latest);
-    // Overshoot by a hair, so that steps land on both sides and the bracket closes.
-    const nudged = guess + (iteration % 2 === 0 ? 1e-9 : -1e-9) * high.alpha;
-    const inside = nudged > low.alpha && nudged < high.alpha && iteration % 4 !== 3;
-    latest = sectionOf(inside ? nudged : 0.5 * (low.alpha + high.alpha));
+  for (let iteration = 0; iteration < 60 && high.alpha - low.alpha > width * high.alpha; iteration++) {
+    // Overshoot a little to alternating sides, so that the bracket closes from both.
+    const guess = newtonGuess(latest) + (iteration % 2 === 0 ? 0.4 : -0.4) * width * high.alpha;
+    const inside = guess > low.alpha && guess < high.alpha && iteration % 3 !== 2;
+    latest = sectionOf(inside ? guess : 0.5 * (low.alpha + high.alpha));
     if (latest.unstable) high = latest;
     else low = latest;
-    if (high.leading !== undefined && high.leading.re <= 1e-12 * Math.hypot(high.leading.re, high.leading.im))
-      break;
   }
   return [low, high];
+}
+
+/**
+ * The crossing inside a bracket to full accuracy by inverse iteration. Undamped modes that coalesce leave a
+ * defective eigenvalue there, on which it fails: then the bracket is narrowed to rounding instead.
+ */
+function polished(
+  bracket: Bracket,
+  pencilAt: (alpha: number) => DensePencil,
+  sectionOf: (alpha: number) => PathSection,
+  setting: Setting,
+): Critical {
+  const [low, high] = bracket;
+  const { leading } = high;
+  if (leading === undefined) throw new Error("an unstable section has a leading point");
+  const found = refineCrossing(
+    pencilAt,
+    high.alpha,
+    resting(leading.im, setting),
+    leading.right,
+    leading.left,
+  );
+  const slack = 2 * (high.alpha - low.alpha);
+  if (found.converged && found.alpha > low.alpha - slack && found.alpha < high.alpha + slack) {
+    return {
+      kind: "crossing",
+      value: found.alpha,
+      re: 0,
+      omega: found.omega,
+      right: found.right,
+      left: found.left,
+    };
+  }
+  const [, narrow] = pinch(bracket, sectionOf, 1e-11);
+  return asCritical("crossing", narrow.alpha, narrow.leading);
+}
+
+/** A frequency that is zero but for rounding is zero: divergence. */
+function resting(omega: number, setting: Setting): number {
+  return omega < 1e-6 * setting.shift ? 0 : omega;
 }
 
 function newtonGuess(section: PathSection): number {
@@ -96,7 +140,7 @@ function check(
 ): Checked {
   if (critical.kind === "peak") throw new Error("a multiplier has no peaks");
   if (critical.kind === "eigenvalue") return checkEigenvalue(pencilAt(0), critical, lift, () => 0);
-  const omega = critical.omega < 1e-6 * setting.shift ? 0 : critical.omega;
+  const omega = resting(critical.omega, setting);
   const crossing = refineCrossing(pencilAt, critical.value, omega, lift(critical.right), lift(critical.left));
   return {
     value: crossing.alpha,

@@ -18,9 +18,11 @@ export interface PeakOptions {
   readonly keep: number;
   /** Further start frequencies [rad/s]. Default none. */
   readonly extra: readonly number[];
+  /** Relative accuracy of a peak's frequency. Default 1e-9; its height is then exact to rounding unless ζ is tiny. */
+  readonly accuracy: number;
 }
 
-export const peakDefaults: PeakOptions = { screen: 0.2, keep: 0.5, extra: [] };
+export const peakDefaults: PeakOptions = { screen: 0.2, keep: 0.5, extra: [], accuracy: 1e-9 };
 
 /** σ_max(H(iω)) as a function; owns its workspace. */
 export function gainFunction(form: SpectralForm): (omega: number) => number {
@@ -47,10 +49,10 @@ export function findPeaks(form: SpectralForm, band: Band, options: PeakOptions =
   for (let k = 0; k < grid.length; k++) {
     const left = k === 0 ? Number.NEGATIVE_INFINITY : sigma[k - 1];
     const right = k === grid.length - 1 ? Number.NEGATIVE_INFINITY : sigma[k + 1];
-    if (sigma[k] < 0.5 * options.keep * highest || sigma[k] < left || sigma[k] < right) continue;
+    if (sigma[k] < 0.8 * options.keep * highest || sigma[k] < left || sigma[k] < right) continue;
     const low = grid[Math.max(0, k - 1)];
     const high = grid[Math.min(grid.length - 1, k + 1)];
-    peaks.push(polishPeak(gain, low, grid[k], high, sigma[k]));
+    peaks.push(polishPeak(gain, low, grid[k], high, sigma[k], options.accuracy));
   }
   peaks.sort((a, b) => b.sigma - a.sigma);
   const top = peaks[0]?.sigma ?? 0;
@@ -70,6 +72,7 @@ export function polishPeak(
   start: number,
   high: number,
   sigmaAtStart: number,
+  accuracy: number = peakDefaults.accuracy,
 ): Peak {
   const golden = 0.381966011250105;
   let a = low;
@@ -84,7 +87,7 @@ export function polishPeak(
   let before = 0;
   for (let iteration = 0; iteration < 60; iteration++) {
     const middle = 0.5 * (a + b);
-    const tolerance = 1e-9 * Math.abs(x) + 1e-300;
+    const tolerance = accuracy * Math.abs(x) + 1e-300;
     if (Math.abs(x - middle) <= 2 * tolerance - 0.5 * (b - a)) break;
     const parabolic = parabolicStep(x, fx, w, fw, v, fv);
     const useful =

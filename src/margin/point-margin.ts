@@ -5,10 +5,11 @@ import type { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { type Audit, auditEigenvalues, auditRadius } from "./audit.js";
 import { bandOf } from "./band.js";
 import { decay } from "./decay.js";
-import { judgeStability, type StabilityVerdict } from "./full-stability.js";
+import { eigenvalueList, judgeStability, type StabilityVerdict, verdictOf } from "./full-stability.js";
 import type { Checked, Measure, Setting } from "./measure.js";
 import { missedPeaks } from "./missed-peaks.js";
 import { multiplier } from "./multiplier.js";
+import { peakDefaults } from "./peaks.js";
 import { radius } from "./radius.js";
 import { type Settled, type SettleOptions, settle, settleDefaults } from "./settle.js";
 import { type Witness, witnessOf } from "./witness.js";
@@ -44,7 +45,7 @@ export function settingOf(settings: MarginSettings, adaptive: AdaptiveModel): Se
   const band = bandOf(settings.bandHz);
   const searched = Number.isFinite(band.high) ? band : { low: band.low, high: adaptive.searchedTo };
   const omegaRef = Number.isFinite(searched.high) ? searched.high : adaptive.shift;
-  return { band: searched, shift: adaptive.shift, omegaRef, hints: [] };
+  return { band: searched, shift: adaptive.shift, omegaRef, peaks: peakDefaults };
 }
 
 /** The states along the multiplier at one point. */
@@ -66,7 +67,7 @@ export function marginAt(
   const states = statesAt(adaptive.full.model, values);
   let hints: readonly number[] = [];
   for (let restart = 0; ; restart++) {
-    const here = { ...setting, hints };
+    const here = { ...setting, peaks: { ...setting.peaks, extra: hints } };
     const settled = settle(adaptive, measure, states, here, options);
     const stability = judgeStability(
       adaptive,
@@ -84,6 +85,25 @@ export function marginAt(
     adaptive.enrich(news);
     hints = [...hints, ...missed];
   }
+}
+
+/** The margin at one point settled loosely, with the reduced model's word on stability and no audit. */
+export function provisionalMargin(
+  adaptive: AdaptiveModel,
+  measure: Measure,
+  values: Values,
+  setting: Setting,
+): PointMargin {
+  const states = statesAt(adaptive.full.model, values);
+  const settled = settle(adaptive, measure, states, setting, {
+    ...settleDefaults,
+    tolerance: 1e-3,
+    competing: 1,
+  });
+  const stability = verdictOf(eigenvalueList(settled.estimate.eigenvalues), [], setting, 0, 0);
+  const audit: Audit = { evaluations: 0, worst: 0, frequencies: [], surprised: false, directions: [] };
+  const point = assemble(adaptive, measure, states, setting, { settled, stability, audit, missed: [] });
+  return { ...point, doubts: [...point.doubts, "no evidence was gathered yet"] };
 }
 
 interface Findings {

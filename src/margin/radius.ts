@@ -10,7 +10,7 @@ import {
   realDirections,
   type Setting,
 } from "./measure.js";
-import { findPeaks, peakDefaults } from "./peaks.js";
+import { findPeaks } from "./peaks.js";
 import { spectralForm } from "./spectral-form.js";
 import { checkEigenvalue, unstableCriticals, upperHalf } from "./stability.js";
 
@@ -19,7 +19,7 @@ function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Settin
   const eigenvalues = upperHalf(form.eigen);
   const unstable = unstableCriticals(form.eigen, setting);
   if (unstable.length > 0) return { value: unstable[0].value, criticals: unstable, eigenvalues };
-  const criticals = findPeaks(form, setting.band, { ...peakDefaults, extra: setting.hints })
+  const criticals = findPeaks(form, setting.band, setting.peaks)
     .filter((peak) => peak.sigma > 0)
     .map(({ omega, sigma }) => ({ kind: "peak" as const, value: 1 / sigma, omega, sigma }));
   return { value: criticals[0]?.value ?? Number.POSITIVE_INFINITY, criticals, eigenvalues };

@@ -1,5 +1,5 @@
 import type { Problem } from "../problem/problem.js";
-import { type Judgement, judge, settledWorst } from "./judge.js";
+import { type Judgement, judge, provisional, settledWorst } from "./judge.js";
 import type { MarginCommandResult, TuneCommandResult } from "./result.js";
 import { judgedDesign, marginResult, otherMeasures, recordOf } from "./result-builder.js";
 import { type ReportProgress, Session } from "./session.js";
@@ -70,54 +70,48 @@ export async function tuneProblem(
   const seed = options.seed ?? problem.tune.seed;
   context.progress({ stage: "judging the start design", done: 0, total: null });
   const worst = settledWorst(session, design, []);
-  const before = judgedDesign(session, design, judge(session, design, worst.at, [], context.progress));
-  const complete = (design: ReadonlyMap<string, number>, judgement: Judgement, tuned: Partial<Tuned>) => ({
-    ...marginResult(
-      session,
-      context.version,
-      design,
-      judgement,
-      began,
-      tuned.factorisationsBeforeAudit ?? null,
-    ),
-    command: "tune" as const,
-    measures: {},
-    seed,
-    before,
-    history: (tuned.history ?? []).map((row) => ({
-      ...row,
-      design: recordOf(row.design),
-      at: recordOf(row.at),
-    })),
-    starts: (tuned.starts ?? []).map(({ x, value }) => ({
-      value,
-      design: recordOf(session.designs.valuesOf(x)),
-    })),
-    rounded: session.designs.isStepped,
-  });
+  const snapshot = (of: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>, before: Judgement) => {
+    const judgement = provisional(session, of, at);
+    const trunk = marginResult(session, context.version, of, judgement, began, null);
+    const found = { seed, before: judgedDesign(session, design, before), measures: {}, ...nothingFound };
+    context.snapshot({ ...trunk, ...found, command: "tune", status: "interrupted" });
+    return judgement;
+  };
+  const first = snapshot(design, worst.at, provisional(session, design, worst.at));
+  const search = { ...tuneDefaults, seed, tolerance: problem.tune.tolerance };
   const tuned = await tune(
     session,
     worst,
-    { ...tuneDefaults, seed, tolerance: problem.tune.tolerance },
+    search,
     context.progress,
-    (better, found) => {
-      const judgement = judge(session, better, found.at, [], () => undefined);
-      context.snapshot({ ...complete(better, judgement, {}), status: "interrupted" });
-    },
+    (better, { at }) => void snapshot(better, at, first),
   );
+  const { complex, real } = session.adaptive.full.counts;
+  const final = session.designs.valuesOf(tuned.best.x);
+  const judgement = judge(session, final, undefined, tuned.best.active, context.progress);
+  const before = judge(session, design, worst.at, [], context.progress);
+  context.progress({ stage: "the other measures", done: 0, total: null });
+  const trunk = marginResult(session, context.version, final, judgement, began, complex + real);
   const result: TuneCommandResult = {
-    ...complete(tuned.design, tuned.judgement, tuned),
-    measures: otherMeasures(session, tuned.design, tuned.judgement.at),
+    ...trunk,
+    ...verdictOf(trunk, tuned),
+    command: "tune",
+    measures: otherMeasures(session, final, judgement.at),
+    seed,
+    before: judgedDesign(session, design, before),
+    history: tuned.history.map((row) => ({ ...row, design: recordOf(row.design), at: recordOf(row.at) })),
+    starts: tuned.starts.map(({ x, value }) => ({ value, design: recordOf(session.designs.valuesOf(x)) })),
+    rounded: session.designs.isStepped,
   };
-  const final = finished(result, tuned);
-  context.snapshot(final);
-  return { result: final, vectors: worstVector(session, tuned.judgement) };
+  context.snapshot(result);
+  return { result, vectors: worstVector(session, judgement) };
 }
 
-function finished(result: TuneCommandResult, tuned: Tuned): TuneCommandResult {
-  const doubts = [...result.doubts, ...tuned.doubts];
-  const status = tuned.infeasible ? "infeasible" : doubts.length > 0 ? "untrusted" : result.status;
-  return { ...result, doubts, status };
+const nothingFound = { history: [], starts: [], rounded: false };
+
+function verdictOf(trunk: MarginCommandResult, tuned: Tuned): Pick<TuneCommandResult, "doubts" | "status"> {
+  const doubts = [...trunk.doubts, ...tuned.doubts];
+  return { doubts, status: tuned.infeasible ? "infeasible" : doubts.length > 0 ? "untrusted" : trunk.status };
 }
 
 function startDesign(

@@ -1,4 +1,4 @@
-import { marginAt, type PointMargin, statesAt } from "../margin/point-margin.js";
+import { marginAt, type PointMargin, provisionalMargin, statesAt } from "../margin/point-margin.js";
 import { type Settled, settle, settleDefaults } from "../margin/settle.js";
 import type { Resolution } from "./operating-space.js";
 import type { ReportProgress, Session } from "./session.js";
@@ -54,6 +54,21 @@ export function judge(
   }
 }
 
+/** A judgement without its evidence, for a search that may be interrupted: value and place only. */
+export function provisional(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  at: ReadonlyMap<string, number>,
+): Judgement {
+  const point = provisionalMargin(
+    session.adaptive,
+    session.measure,
+    session.valuesAt(design, at),
+    session.setting,
+  );
+  return { at, point, envelope: [], doubts: point.doubts };
+}
+
 /** Full-model margin at one operating point to a loose tolerance; only the most critical place is examined. */
 export function settleAt(
   session: Session,
@@ -77,15 +92,17 @@ export function settledWorst(
   resolution: Resolution = "fine",
   tolerance = 1e-6,
 ): EnvelopeCheck {
+  const visited: ReadonlyMap<string, number>[] = [];
   let best: EnvelopeCheck | undefined;
   for (let round = 0; round < mostRounds; round++) {
     const found =
       best === undefined
         ? session.worstPoints(design, known, resolution)[0]
-        : session.worstPoints(design, [best.at], "local")[0];
+        : session.worstPoints(design, [...known, ...visited], "local")[0];
     const slack = tolerance * Math.max(1, Math.abs(found.value));
     if (best !== undefined && found.value >= best.value - slack) break;
     const { value } = settleAt(session, design, found.at, tolerance);
+    visited.push(found.at);
     if (best === undefined || value < best.value) best = { at: found.at, value };
     if (Math.abs(value - found.value) <= slack) break;
   }

@@ -1,5 +1,6 @@
 import { FullModel } from "../fullorder/full-model.js";
 import type { Estimate, Measure, Setting } from "../margin/measure.js";
+import { type PeakOptions, peakDefaults } from "../margin/peaks.js";
 import { measureOf, settingOf, statesAt } from "../margin/point-margin.js";
 import { buildModel, type ParametricModel, stateAt, type Values } from "../model/parametric-model.js";
 import type { Problem, TermGroup } from "../problem/problem.js";
@@ -60,7 +61,7 @@ export class Session {
       const pencil = this.adaptive.reducedAt(states(multiplier));
       return this.#searchReach === null ? pencil : truncateModes(pencil, this.#searchReach);
     };
-    return this.measure.estimate(pencilAt, this.setting);
+    return this.measure.estimate(pencilAt, { ...this.setting, peaks: searchPeaks });
   }
 
   /** Worst operating points of a design by the reduced model, worst first. */
@@ -92,6 +93,9 @@ export class Session {
     for (const [d, o] of samples) this.adaptive.addSample(stateAt(this.model, this.valuesAt(d, o)));
   }
 }
+
+/** While searching, a peak's frequency is wanted to a thousandth of the narrowest peak only. */
+const searchPeaks: PeakOptions = { ...peakDefaults, screen: 0.25, accuracy: 1e-6 };
 
 const structural: ReadonlySet<TermGroup> = new Set(["mass", "stiffness"]);
 

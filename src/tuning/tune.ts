@@ -1,6 +1,6 @@
 import { createRandom, type Random } from "../numerics/random.js";
 import type { Candidate, ClimbOptions } from "./climb.js";
-import { type EnvelopeCheck, type Judgement, judge, settleAt } from "./judge.js";
+import { type EnvelopeCheck, settleAt } from "./judge.js";
 import { roundToSteps } from "./rounding.js";
 import { climbAll, confirmRounds, type Incumbent, type ReportBest, type RoundRecord } from "./rounds.js";
 import { screen } from "./screen.js";
@@ -20,16 +20,14 @@ export interface TuneOptions {
 
 export const tuneDefaults: Omit<TuneOptions, "seed" | "tolerance"> = { screened: 160, starts: 6, rounds: 8 };
 
+/** What the search found; its evidence is gathered afterwards. */
 export interface Tuned {
-  readonly design: ReadonlyMap<string, number>;
-  readonly judgement: Judgement;
-  /** No design within the limits was found; `design` is the least violated one. */
+  readonly best: Incumbent;
+  /** No design within the limits was found; `best` is the least violated one. */
   readonly infeasible: boolean;
   /** Local optima that the starts of the first round led to on the reduced model, best first. */
   readonly starts: readonly Candidate[];
   readonly history: readonly RoundRecord[];
-  /** Full factorisations before the last judgement, which is the audit. */
-  readonly factorisationsBeforeAudit: number;
   readonly doubts: readonly string[];
 }
 
@@ -60,7 +58,7 @@ export async function tune(
   const anchor = designs.leastViolated(random, 2000);
   if (!designs.isFeasible(anchor)) {
     const incumbent = { x: anchor, worst: before, active: [before.at] };
-    return conclude(session, incumbent, { infeasible: true, starts: [], history: [], doubts: [] }, progress);
+    return { best: incumbent, infeasible: true, starts: [], history: [], doubts: [] };
   }
   session.addExtremeSamples(designs.valuesOf(designs.start), true);
   const points = [before.at, ...session.operation.corners.map((x) => session.operation.valuesOf(x))];
@@ -91,19 +89,7 @@ export async function tune(
     best = rounded ?? best;
   }
   learnFromNeighbours(session, best, random, options.tolerance);
-  return conclude(session, best, { infeasible: false, starts, history, doubts }, progress);
-}
-
-function conclude(
-  session: Session,
-  incumbent: Incumbent,
-  found: Pick<Tuned, "infeasible" | "starts" | "history" | "doubts">,
-  progress: ReportProgress,
-): Tuned {
-  const { complex, real } = session.adaptive.full.counts;
-  const design = session.designs.valuesOf(incumbent.x);
-  const judgement = judge(session, design, undefined, incumbent.active, progress);
-  return { ...found, design, judgement, factorisationsBeforeAudit: complex + real };
+  return { best, infeasible: false, starts, history, doubts };
 }
 
 /** Full-model margins at two neighbouring designs: where the reduced model was wrong there, it learns. */
