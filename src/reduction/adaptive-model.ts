@@ -10,7 +10,9 @@ import { type DensePencil, ReducedModel } from "./reduced-model.js";
 /** Models up to this order are their own reduced model: the basis spans everything. */
 const carriedWhole = 60;
 /** The same for models judged without a band. */
-const carriedWholeWithoutBand = 400;
+const carriedWholeWithoutBand = 200;
+/** Larger ones without a band are judged up to about this many modes, and the result says how far that was. */
+const modesWithoutBand = 160;
 /** More modes than this no reduced model here carries. */
 export const mostModes = 500;
 
@@ -46,8 +48,9 @@ export class AdaptiveModel {
   constructor(full: FullModel, start: ModelState, upperOmega: number | null) {
     this.full = full;
     const pencil = full.pencilAt(start);
-    this.shift = upperOmega ?? typicalFrequency(pencil);
     this.exact = full.order <= (upperOmega === null ? carriedWholeWithoutBand : carriedWhole);
+    const typical = typicalFrequency(pencil);
+    this.shift = upperOmega ?? (this.exact ? typical : frequencyOfMode(pencil, modesWithoutBand, typical));
     this.#energy = energyForm(pencil, 0.3 * this.shift);
     this.#basis = new Basis(this.#energy.matrix);
     this.#reduced = new ReducedModel(full.model);
@@ -126,8 +129,21 @@ function typicalFrequency(pencil: FullPencil): number {
   const m = pencil.mass.normBound;
   const c = pencil.velocity.normBound;
   const k = pencil.displacement.normBound;
-  if (m > 0) return (-c + Math.sqrt(c * c + 4 * m * k)) / (2 * m) || 1;
-  return c > 0 && k > 0 ? k / c : 1;
+  const denominator = c + Math.sqrt(c * c + 4 * m * k);
+  return denominator > 0 && k > 0 ? (2 * k) / denominator : 1;
+}
+
+/** A frequency below which there are between half of `most` and `most` modes, by bisection on the inertia. */
+function frequencyOfMode(pencil: FullPencil, most: number, highest: number): number {
+  let [low, high] = [0, highest];
+  for (let bisection = 0; bisection < 60; bisection++) {
+    const middle = 0.5 * (low + high);
+    const { count } = countModesBelow(pencil, middle);
+    if (count > most) high = middle;
+    else if (count < most / 2) low = middle;
+    else return middle;
+  }
+  return high;
 }
 
 function* columns(a: DenseMatrix): Iterable<Float64Array> {
