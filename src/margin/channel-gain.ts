@@ -9,6 +9,7 @@ import {
 } from "../numerics/dense/matrix.js";
 import { complexMultiply } from "../numerics/dense/products.js";
 import { largestSingular } from "../numerics/dense/svd.js";
+import { createRandom } from "../numerics/random.js";
 import { applyComplex, applyComplexTransposed } from "../numerics/real-operator.js";
 import { asColumn } from "./eigenpair.js";
 
@@ -26,17 +27,20 @@ export interface ChannelGain {
   /** y = P⁻ᴴ Cᵀ u. */
   readonly y: ComplexVector;
   readonly backwardError: number;
+  /** False when the directions ran out before σ stood still: it is a lower bound then. */
+  readonly settled: boolean;
 }
 
 /** Channels up to this many are solved at once; wider ones by directions. */
 const solveAllUpTo = 24;
 
-/** σ_max(H(s)) on the factored pencil; `start` (length m) warms the search of wide channels. */
-export function channelGain(pencil: Pencil, factor: PencilFactor, start?: ComplexVector): ChannelGain {
-  const inputs = pencil.input.cols;
-  const outputs = pencil.outputTransposed.cols;
-  if (inputs <= solveAllUpTo) return gainFromAllInputs(pencil, factor);
-  return gainFromDirections(pencil, factor, start ?? onesVector(inputs), Math.min(inputs, outputs, 30));
+/** Directions tried on wide channels at most: convergence is far quicker unless many gains are nearly equal. */
+const mostDirections = 60;
+
+/** σ_max(H(s)) on the factored pencil. */
+export function channelGain(pencil: Pencil, factor: PencilFactor): ChannelGain {
+  if (pencil.input.cols <= solveAllUpTo) return gainFromAllInputs(pencil, factor);
+  return gainFromDirections(pencil, factor);
 }
 
 /** y = B diag(s^k) v. */
@@ -83,34 +87,38 @@ function gainFromAllInputs(pencil: Pencil, factor: PencilFactor): ChannelGain {
     x: { re: x.re, im: x.im },
     y,
     backwardError: Math.max(forward, backwardError),
+    settled: true,
   };
 }
 
 /**
- * Golub–Kahan–Lanczos bidiagonalisation of H from one direction, full reorthogonalisation, until the
- * largest singular value stands still or the directions are exhausted.
+ * Golub–Kahan–Lanczos bidiagonalisation of H, full reorthogonalisation, until the largest singular value stands
+ * still or the directions are exhausted. It starts from Hᴴ of a random output: a regular start such as ones can be
+ * blind to the strongest direction by symmetry, and one outside the range of Hᴴ costs a direction more.
  */
-function gainFromDirections(
-  pencil: Pencil,
-  factor: PencilFactor,
-  start: ComplexVector,
-  maximumSteps: number,
-): ChannelGain {
+function gainFromDirections(pencil: Pencil, factor: PencilFactor): ChannelGain {
   const { sRe, sIm } = factor;
+  const outputs = pencil.outputTransposed.cols;
+  const most = Math.min(pencil.input.cols, outputs, mostDirections);
   const directions: ComplexVector[] = [];
   const responses: ComplexVector[] = [];
-  let next: ComplexVector = { re: start.re.slice(), im: start.im.slice() };
+  const back = (u: ComplexVector) =>
+    applyInputAdjoint(pencil, sRe, sIm, adjointResponse(pencil, factor, u).y);
+  let next = back(randomVector(outputs));
   let backwardError = 0;
   let sigma = 0;
-  while (directions.length < maximumSteps && orthonormaliseAgainst(next, directions)) {
+  let settled = most < mostDirections;
+  while (directions.length < most && orthonormaliseAgainst(next, directions)) {
     directions.push(next);
     const x = applyInput(pencil, sRe, sIm, next);
     backwardError = Math.max(backwardError, factor.solveInPlace(asColumn(x)));
     responses.push(x);
     const best = largestSingular(outputsOf(pencil, sideBySide(pencil.order, responses)));
-    if (Math.abs(best.sigma - sigma) <= 1e-13 * best.sigma) break;
+    const change = Math.abs(best.sigma - sigma);
+    settled ||= change <= 1e-10 * best.sigma;
+    if (change <= 1e-13 * best.sigma) break;
     sigma = best.sigma;
-    next = applyInputAdjoint(pencil, sRe, sIm, adjointResponse(pencil, factor, best.u).y);
+    next = back(best.u);
   }
   const all = sideBySide(pencil.order, responses);
   const best = largestSingular(outputsOf(pencil, all));
@@ -124,6 +132,7 @@ function gainFromDirections(
     x: complexMultiply(all, asColumn(best.v)),
     y: adjoint.y,
     backwardError: Math.max(backwardError, adjoint.backwardError),
+    settled: settled || directions.length < most,
   };
 }
 
@@ -172,6 +181,9 @@ function sideBySide(rows: number, columns: readonly ComplexVector[]): ComplexMat
   return out;
 }
 
-function onesVector(length: number): ComplexVector {
-  return { re: new Float64Array(length).fill(1), im: new Float64Array(length) };
+function randomVector(length: number): ComplexVector {
+  const random = createRandom(length);
+  const out = complexVector(length);
+  for (let i = 0; i < length; i++) [out.re[i], out.im[i]] = [random.normal(), random.normal()];
+  return out;
 }

@@ -24,6 +24,9 @@ export interface PeakOptions {
 
 export const peakDefaults: PeakOptions = { screen: 0.2, keep: 0.5, extra: [], accuracy: 1e-9 };
 
+/** Heights closer than this, relative, differ by rounding only. */
+const sameHeight = 1e-15;
+
 /** σ_max(H(iω)) as a function; owns its workspace. */
 export function gainFunction(form: SpectralForm): (omega: number) => number {
   const h: ComplexMatrix = complexZeros(form.outputs, form.inputs);
@@ -42,7 +45,7 @@ export function gainFunction(form: SpectralForm): (omega: number) => number {
 export function findPeaks(form: SpectralForm, band: Band, options: PeakOptions = peakDefaults): Peak[] {
   if (form.inputs === 0 || form.outputs === 0) return [];
   const gain = gainFunction(form);
-  const grid = startGrid(form, band, options);
+  const grid = startGrid(form, gain, band, options);
   const sigma = grid.map(gain);
   const highest = sigma.reduce((high, s) => Math.max(high, s), 0);
   const peaks: Peak[] = [];
@@ -110,7 +113,8 @@ export function polishPeak(
       else if (fu >= fv || v === x || v === w) [v, fv] = [u, fu];
     }
   }
-  return { omega: x, sigma: fx };
+  // Between equal heights the iteration wanders off by a rounding error; ω = 0 is to stay ω = 0.
+  return fx > sigmaAtStart * (1 + sameHeight) ? { omega: x, sigma: fx } : { omega: start, sigma: sigmaAtStart };
 }
 
 /** Step from x to the vertex of the parabola through the three points; 0 when there is none. */
@@ -121,24 +125,58 @@ function parabolicStep(x: number, fx: number, w: number, fw: number, v: number, 
   return denominator === 0 ? 0 : -((x - v) * q - (x - w) * r) / denominator;
 }
 
-function startGrid(form: SpectralForm, band: Band, { screen, extra }: PeakOptions): number[] {
+/** Without an upper end of the band the gain is looked at up to here, over the furthest pole: its limit at infinity. */
+const farthest = [10, 1e3, 1e6];
+
+/**
+ * Slots of the poles that can make a peak: strongest first, until the own peak of one is below `screen` of the highest
+ * gain met so far. The gain is the yardstick, not the strongest own peak: close or well damped modes
+ * may have large residues that nearly cancel.
+ */
+function polesThatMatter(
+  form: SpectralForm,
+  gain: (omega: number) => number,
+  band: Band,
+  screen: number,
+): Set<number> {
+  const own = Array.from(form.poles, (_, slot) => ownPeak(form, slot));
+  const order = Array.from(own.keys()).sort((a, b) => own[b] - own[a]);
+  const kept = new Set<number>();
+  let highest = 0;
+  for (const slot of order) {
+    if (own[slot] < screen * highest) break;
+    kept.add(slot);
+    const omega = form.eigen.im[form.poles[slot]];
+    const height = omega >= band.low && omega <= band.high ? gain(omega) : 0;
+    if (Number.isFinite(height)) highest = Math.max(highest, height);
+  }
+  return kept;
+}
+
+function startGrid(
+  form: SpectralForm,
+  gain: (omega: number) => number,
+  band: Band,
+  { screen, extra }: PeakOptions,
+): number[] {
   const { eigen, poles } = form;
-  const own = Array.from(poles, (_, slot) => ownPeak(form, slot));
-  const strongest = own.reduce((high, value) => Math.max(high, Number.isFinite(value) ? value : 0), 0);
+  const matters = polesThatMatter(form, gain, band, screen);
   const marks: number[] = [band.low, ...extra];
   let furthest = eigen.shift;
   poles.forEach((j, slot) => {
     if (!Number.isFinite(eigen.re[j])) return;
-    furthest = Math.max(furthest, Math.hypot(eigen.re[j], eigen.im[j]));
-    if (own[slot] < screen * strongest) return;
-    marks.push(eigen.im[j]);
-    // A well damped pole peaks lower than its Im λ by more than its neighbourhood is wide.
-    if (Math.abs(eigen.re[j]) > 0.05 * eigen.im[j]) {
-      marks.push(Math.sqrt(Math.max(0, eigen.im[j] ** 2 - eigen.re[j] ** 2)));
+    const [size, im] = [Math.hypot(eigen.re[j], eigen.im[j]), eigen.im[j]];
+    furthest = Math.max(furthest, size);
+    if (!matters.has(slot)) return;
+    marks.push(im);
+    // A well damped pole peaks away from its Im λ by more than its neighbourhood is wide: stiffness errors
+    // see it lower, damping errors at |λ|.
+    if (Math.abs(eigen.re[j]) > 0.05 * im) {
+      marks.push(Math.sqrt(Math.max(0, im ** 2 - eigen.re[j] ** 2)), size);
     }
   });
-  marks.push(Number.isFinite(band.high) ? band.high : 10 * furthest);
-  const inside = marks.filter((omega) => omega >= band.low && omega <= Math.min(band.high, 10 * furthest));
+  const ends = Number.isFinite(band.high) ? [band.high] : farthest.map((factor) => factor * furthest);
+  const inside = [...marks, ...ends].filter((omega) => omega >= band.low && omega <= ends[ends.length - 1]);
   inside.sort((a, b) => a - b);
   const grid: number[] = [];
   inside.forEach((omega, k) => {

@@ -39,7 +39,7 @@ function check(
     value: 1 / gain.sigma,
     omega: critical.omega,
     error: gain.backwardError,
-    converged: Number.isFinite(gain.sigma),
+    converged: gain.settled && Number.isFinite(gain.sigma),
     directions: realDirections(gain.x, gain.y),
     found: { kind: "peak", gain },
   };

@@ -1,5 +1,6 @@
+import { factorDense } from "../numerics/dense/lu.js";
 import { type ComplexMatrix, complexZeros } from "../numerics/dense/matrix.js";
-import { complexMultiply } from "../numerics/dense/products.js";
+import { complexMultiply, multiplyTransposed } from "../numerics/dense/products.js";
 import { type QuadraticEigen, quadraticEigen } from "../numerics/dense/quadratic-eigen.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
 
@@ -8,7 +9,8 @@ import type { DensePencil } from "../reduction/reduced-model.js";
  *
  *     H(iω) = Σ_j  R_j / (1 − (iω − s₀) θ_j)  · (iω)^k per column,   R_j = C x_j z_j B
  *
- * Only poles with Im λ ≥ 0 are kept; their conjugates follow because P is real.
+ * Only finite poles with Im λ ≥ 0 are kept; their conjugates follow because P is real, and infinite ones (massless
+ * dofs) are one constant, C P(s₀)⁻¹B less the finite residues: their own vectors may be defective.
  */
 export interface SpectralForm {
   readonly eigen: QuadraticEigen;
@@ -20,8 +22,12 @@ export interface SpectralForm {
   /** R_j one after the other, each p×m column-major. */
   readonly residueRe: Float64Array;
   readonly residueIm: Float64Array;
+  /** What the infinite poles add to C P⁻¹B, p×m: a constant. */
+  readonly constant: Float64Array;
   /** ‖R_j‖_F. */
   readonly residueNorm: Float64Array;
+  /** The same over the stiffness-like columns alone. */
+  readonly inertNorm: Float64Array;
 }
 
 /** Relative distance from the axis below which a pole counts as lying on it. */
@@ -35,7 +41,9 @@ export function spectralForm(pencil: DensePencil, shift: number): SpectralForm {
   const eigen = quadraticEigen(massMatrix, velocityMatrix, displacementMatrix, shift);
   const outputs = outputTransposedMatrix.cols;
   const inputs = inputMatrix.cols;
-  const poles = Int32Array.from(Array.from(eigen.re.keys()).filter((j) => eigen.im[j] >= 0));
+  const poles = Int32Array.from(
+    Array.from(eigen.re.keys()).filter((j) => eigen.im[j] >= 0 && Number.isFinite(eigen.re[j])),
+  );
   const r = complexMultiply(realTransposed(outputTransposedMatrix), eigen.right);
   const q = complexMultiply(eigen.left, asComplex(inputMatrix));
 
@@ -43,9 +51,11 @@ export function spectralForm(pencil: DensePencil, shift: number): SpectralForm {
   const residueRe = new Float64Array(size * poles.length);
   const residueIm = new Float64Array(size * poles.length);
   const residueNorm = new Float64Array(poles.length);
+  const inertNorm = new Float64Array(poles.length);
   const rows = q.rows;
   poles.forEach((j, slot) => {
     let sum = 0;
+    let inert = 0;
     for (let k = 0, t = slot * size; k < inputs; k++) {
       const qRe = q.re[j + k * rows];
       const qIm = q.im[j + k * rows];
@@ -54,14 +64,53 @@ export function spectralForm(pencil: DensePencil, shift: number): SpectralForm {
         const rIm = r.im[i + j * outputs];
         residueRe[t] = rRe * qRe - rIm * qIm;
         residueIm[t] = rRe * qIm + rIm * qRe;
-        sum += residueRe[t] * residueRe[t] + residueIm[t] * residueIm[t];
+        const square = residueRe[t] * residueRe[t] + residueIm[t] * residueIm[t];
+        sum += square;
+        if (powers[k] === 0) inert += square;
       }
     }
     residueNorm[slot] = Math.sqrt(sum);
+    inertNorm[slot] = Math.sqrt(inert);
   });
-  const form = { eigen, outputs, inputs, powers, poles, residueRe, residueIm, residueNorm };
+  const isRegular = eigen.re.every((value) => Number.isFinite(value));
+  const constant = isRegular ? new Float64Array(size) : constantPart(pencil, eigen, poles, residueRe);
+  const form = {
+    eigen,
+    constant,
+    outputs,
+    inputs,
+    powers,
+    poles,
+    residueRe,
+    residueIm,
+    residueNorm,
+    inertNorm,
+  };
   dropUnseenAxisPoles(form);
   return form;
+}
+
+/** C P(s₀)⁻¹ B, where every term of the sum stands at its residue, less the finite poles and their conjugates. */
+function constantPart(
+  pencil: DensePencil,
+  eigen: QuadraticEigen,
+  poles: Int32Array,
+  residueRe: Float64Array,
+): Float64Array {
+  const { massMatrix, velocityMatrix, displacementMatrix, inputMatrix, outputTransposedMatrix } = pencil;
+  const s = eigen.shift;
+  const values = displacementMatrix.values.map(
+    (value, q) => value + s * (velocityMatrix.values[q] + s * massMatrix.values[q]),
+  );
+  const responses = { ...inputMatrix, values: inputMatrix.values.slice() };
+  factorDense({ ...massMatrix, values }).solveInPlace(responses);
+  const { values: constant } = multiplyTransposed(outputTransposedMatrix, responses);
+  const size = constant.length;
+  poles.forEach((j, slot) => {
+    const times = eigen.im[j] === 0 ? 1 : 2;
+    for (let t = 0; t < size; t++) constant[t] -= times * residueRe[slot * size + t];
+  });
+  return constant;
 }
 
 /** H(iω), written into `h` (p×m). A pole that lies exactly at iω gives an infinite gain. */
@@ -71,7 +120,7 @@ export function transferInto(h: ComplexMatrix, form: SpectralForm, omega: number
   const size = outputs * inputs;
   const hRe = h.re;
   const hIm = h.im;
-  hRe.fill(0);
+  hRe.set(form.constant);
   hIm.fill(0);
   for (let slot = 0; slot < poles.length; slot++) {
     if (residueNorm[slot] === 0) continue;
@@ -106,16 +155,20 @@ export function transferInto(h: ComplexMatrix, form: SpectralForm, omega: number
   applyPowers(hRe, hIm, outputs, powers, omega);
 }
 
-/** Largest |contribution| of one pole at its own frequency, a cheap estimate of its peak. */
+/**
+ * Largest |contribution| of one pole at its own frequency, a cheap estimate of its peak: Im λ for stiffness-like
+ * columns, |λ| (where an overdamped mode answers most) for the factor ω of damping-like ones.
+ */
 export function ownPeak(form: SpectralForm, slot: number): number {
-  const { eigen, poles, residueNorm } = form;
+  const { eigen, poles, residueNorm, inertNorm } = form;
   const j = poles[slot];
   const tr = eigen.thetaRe[j];
   const ti = eigen.thetaIm[j];
   const omega = Math.max(0, eigen.im[j]);
   const distance = Math.hypot(1 + eigen.shift * tr + omega * ti, eigen.shift * ti - omega * tr);
-  const power = form.powers.some((k) => k === 1) ? Math.max(1, omega) : 1;
-  return (power * residueNorm[slot]) / distance;
+  const stiff = inertNorm[slot];
+  const viscous2 = Math.max(0, residueNorm[slot] ** 2 - stiff ** 2);
+  return Math.hypot(stiff, Math.hypot(eigen.re[j], omega) * Math.sqrt(viscous2)) / distance;
 }
 
 function applyPowers(
@@ -140,12 +193,13 @@ function applyPowers(
  * rounding errors: a gain of pure noise. Its residue is zero by declaration.
  */
 function dropUnseenAxisPoles(form: SpectralForm): void {
-  const { eigen, poles, residueNorm, residueRe, residueIm, outputs, inputs } = form;
+  const { eigen, poles, residueNorm, inertNorm, residueRe, residueIm, outputs, inputs } = form;
   const largest = residueNorm.reduce((high, norm) => Math.max(high, norm), 0);
   poles.forEach((j, slot) => {
     const near = Math.abs(eigen.re[j]) <= onAxis * Math.max(eigen.shift, eigen.im[j]);
     if (!near || residueNorm[slot] > unseen * largest) return;
     residueNorm[slot] = 0;
+    inertNorm[slot] = 0;
     residueRe.fill(0, slot * outputs * inputs, (slot + 1) * outputs * inputs);
     residueIm.fill(0, slot * outputs * inputs, (slot + 1) * outputs * inputs);
   });

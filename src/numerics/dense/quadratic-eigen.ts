@@ -1,4 +1,5 @@
 import { NumericalError } from "../../errors.js";
+import { biorthogonalise } from "./biorthogonal.js";
 import { eigen, eigenvalues } from "./eigen.js";
 import { factorDense } from "./lu.js";
 import type { ComplexMatrix, DenseMatrix } from "./matrix.js";
@@ -11,7 +12,8 @@ import { complexZeros, zeros } from "./matrix.js";
  *     P(s)⁻¹ = X diag(1 / (1 − (s − s₀) θ_j)) Z,      λ_j = s₀ + 1/θ_j,
  *
  * with X n×2n and Z 2n×n. An infinite eigenvalue has θ = 0 and is a constant term, so a
- * singular mass needs no separate treatment. θ is computed to eps, hence λ to about eps·s₀.
+ * singular mass needs no separate treatment. θ is computed to eps, hence λ to about eps·s₀; the double
+ * infinite eigenvalue of a massless, undamped dof scatters by √eps, so |θ| s₀ below 1e-7 counts as infinite.
  *
  * Source: shift-and-invert of the first companion form, Tisseur & Meerbergen, SIAM Review 43 (2001) §3.
  */
@@ -50,6 +52,8 @@ export function quadraticEigen(
   const n = m.rows;
   const { companion, inverse, shift: used } = shiftedCompanion(m, c, s, shift);
   const { re: thetaRe, im: thetaIm, right, left } = eigen(companion);
+  const leastTheta = infiniteBelow / used;
+  biorthogonalise(thetaRe, thetaIm, right, left, leastTheta);
   const x = complexZeros(n, 2 * n);
   const z = complexZeros(2 * n, n);
   for (let j = 0; j < 2 * n; j++) {
@@ -126,12 +130,15 @@ function blockCompanion(a1: DenseMatrix, a2: DenseMatrix, shift: number): DenseM
   return w;
 }
 
+/** |θ| s₀ below which an eigenvalue is infinite. */
+const infiniteBelow = 1e-7;
+
 function fromTheta(thetaRe: Float64Array, thetaIm: Float64Array, shift: number) {
   const re = new Float64Array(thetaRe.length);
   const im = new Float64Array(thetaRe.length);
   for (let j = 0; j < re.length; j++) {
     const size = thetaRe[j] * thetaRe[j] + thetaIm[j] * thetaIm[j];
-    const infinite = Math.sqrt(size) * shift < 1e-14;
+    const infinite = Math.sqrt(size) * shift < infiniteBelow;
     re[j] = infinite ? Number.NEGATIVE_INFINITY : shift + thetaRe[j] / size;
     im[j] = infinite ? 0 : -thetaIm[j] / size;
   }
