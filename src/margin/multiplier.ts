@@ -1,7 +1,7 @@
 import type { Pencil } from "../model/pencil.js";
 import type { ComplexVector } from "../numerics/dense/matrix.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
-import { refineCrossing } from "./crossing.js";
+import { type Crossing, refineCrossing } from "./crossing.js";
 import { blend, type PathPoint, type PathSection, sectionAt, staysStable } from "./eigenvalue-path.js";
 import {
   type Checked,
@@ -11,12 +11,16 @@ import {
   realDirections,
   type Setting,
 } from "./measure.js";
-import { checkEigenvalue } from "./stability.js";
+import { checkEigenvalue, stabilityThreshold } from "./stability.js";
 
-/** Paths are followed up to this multiple of the declared feeding terms; beyond it the answer is "none found". */
+/**
+ * Paths are followed up to this multiple of the declared feeding terms, or of what makes them weigh as much as the
+ * rest of the model, whichever is more; beyond it the answer is "none found".
+ */
 export const highestMultiplier = 1000;
 
-/** Smallest step of the path, relative to the multiplier reached. */
+/** First step of the path, and the smallest relative to the multiplier reached. */
+const firstStep = 0.125;
 const smallestStep = 1e-3;
 
 /** Relative width to which a crossing is bracketed before it is polished. */
@@ -34,7 +38,7 @@ function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Settin
   const start = sections(0);
   if (start.unstable)
     return { value: 0, criticals: [asCritical("eigenvalue", 0, start.leading)], eigenvalues };
-  const found = firstCrossing(start, sections);
+  const found = firstCrossing(start, sections, balancingMultiplier(without, unit, setting.shift));
   if (found === null) return { value: Number.POSITIVE_INFINITY, criticals: [], eigenvalues };
   const critical = polished(found, (alpha) => blend(without, unit, alpha), sections, setting);
   return { value: critical.value, criticals: [critical], eigenvalues };
@@ -43,12 +47,22 @@ function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Settin
 /** Last stable and first unstable section around the first crossing, not yet polished. */
 type Bracket = readonly [PathSection, PathSection];
 
-/** The first crossing on the path, bracketed coarsely; null when there is none. */
-function firstCrossing(start: PathSection, sectionOf: (alpha: number) => PathSection): Bracket | null {
+/**
+ * The first crossing on the path, bracketed coarsely; null when there is none.
+ *
+ * @param balancing - multiplier at which the feeding terms weigh as much as the rest of the model.
+ */
+function firstCrossing(
+  start: PathSection,
+  sectionOf: (alpha: number) => PathSection,
+  balancing: number,
+): Bracket | null {
+  if (!Number.isFinite(balancing)) return null;
+  const unit = Math.min(1, balancing);
   let from = start;
-  let step = 0.125;
-  while (from.alpha < highestMultiplier) {
-    const floor = smallestStep * Math.max(from.alpha, 0.05);
+  let step = firstStep * unit;
+  while (from.alpha < highestMultiplier * Math.max(1, balancing)) {
+    const floor = smallestStep * Math.max(from.alpha, 0.05 * unit);
     const to = sectionOf(from.alpha + step);
     const bracket = to.unstable ? pinch([from, to], sectionOf, coarse) : null;
     const stable = bracket === null ? to : bracket[0];
@@ -61,6 +75,21 @@ function firstCrossing(start: PathSection, sectionOf: (alpha: number) => PathSec
     step *= 2;
   }
   return null;
+}
+
+/** ‖P₀‖/‖P₁ − P₀‖ at |s| = s₀ (Frobenius norms, term by term); Infinity when the multiplier scales nothing. */
+function balancingMultiplier(without: DensePencil, unit: DensePencil, shift: number): number {
+  let [rest, fed] = [0, 0];
+  for (const [name, weight] of [
+    ["massMatrix", shift * shift],
+    ["velocityMatrix", shift],
+    ["displacementMatrix", 1],
+  ] as const) {
+    const before = without[name].values;
+    rest += weight * Math.hypot(...before);
+    fed += weight * Math.hypot(...unit[name].values.map((value, q) => value - before[q]));
+  }
+  return rest / fed;
 }
 
 /** Narrows a bracket to the given relative width: Newton steps along the leading path, halving in between. */
@@ -83,8 +112,9 @@ function pinch(
 }
 
 /**
- * The crossing inside a bracket to full accuracy by inverse iteration. Undamped modes that coalesce leave a
- * defective eigenvalue there, on which it fails: then the bracket is narrowed to rounding instead.
+ * The crossing inside a bracket to full accuracy by inverse iteration, which weak damping lets converge from close by
+ * only. Undamped modes that coalesce leave a defective eigenvalue there, on which it fails: then the bracket is
+ * narrowed to rounding instead.
  */
 function polished(
   bracket: Bracket,
@@ -92,29 +122,34 @@ function polished(
   sectionOf: (alpha: number) => PathSection,
   setting: Setting,
 ): Critical {
-  const [low, high] = bracket;
+  let narrow = bracket;
+  for (const width of [coarse, 1e-5, 1e-7]) {
+    narrow = pinch(narrow, sectionOf, width);
+    const found = crossingInside(narrow, pencilAt, setting);
+    if (found === undefined) continue;
+    const { alpha, omega, right, left } = found;
+    return { kind: "crossing", value: alpha, re: 0, omega, right, left };
+  }
+  const [, last] = pinch(narrow, sectionOf, 1e-11);
+  return asCritical("crossing", last.alpha, last.leading);
+}
+
+/** The polished crossing, if inverse iteration finds one that belongs to the bracket. */
+function crossingInside(
+  [low, high]: Bracket,
+  pencilAt: (alpha: number) => DensePencil,
+  setting: Setting,
+): Crossing | undefined {
   const { leading } = high;
   if (leading === undefined) throw new Error("an unstable section has a leading point");
-  const found = refineCrossing(
-    pencilAt,
-    high.alpha,
-    resting(leading.im, setting),
-    leading.right,
-    leading.left,
-  );
-  const slack = 2 * (high.alpha - low.alpha);
-  if (found.converged && found.alpha > low.alpha - slack && found.alpha < high.alpha + slack) {
-    return {
-      kind: "crossing",
-      value: found.alpha,
-      re: 0,
-      omega: found.omega,
-      right: found.right,
-      left: found.left,
-    };
-  }
-  const [, narrow] = pinch(bracket, sectionOf, 1e-11);
-  return asCritical("crossing", narrow.alpha, narrow.leading);
+  const omega = resting(leading.im, setting);
+  const found = refineCrossing(pencilAt, high.alpha, omega, leading.right, leading.left);
+  // A section counts as unstable a little late only: from a real part on that is more than rounding.
+  const late =
+    found.drift === 0 ? 0 : stabilityThreshold(0, found.omega, setting.shift) / Math.abs(found.drift);
+  const slack = 2 * (high.alpha - low.alpha) + late;
+  const inside = found.alpha > low.alpha - slack && found.alpha < high.alpha + slack;
+  return found.converged && inside ? found : undefined;
 }
 
 /** A frequency that is zero but for rounding is zero: divergence. */

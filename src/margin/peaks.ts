@@ -114,7 +114,9 @@ export function polishPeak(
     }
   }
   // Between equal heights the iteration wanders off by a rounding error; ω = 0 is to stay ω = 0.
-  return fx > sigmaAtStart * (1 + sameHeight) ? { omega: x, sigma: fx } : { omega: start, sigma: sigmaAtStart };
+  return fx > sigmaAtStart * (1 + sameHeight)
+    ? { omega: x, sigma: fx }
+    : { omega: start, sigma: sigmaAtStart };
 }
 
 /** Step from x to the vertex of the parabola through the three points; 0 when there is none. */
@@ -161,27 +163,51 @@ function startGrid(
 ): number[] {
   const { eigen, poles } = form;
   const matters = polesThatMatter(form, gain, band, screen);
-  const marks: number[] = [band.low, ...extra];
+  const marks: Mark[] = [band.low, ...extra].map((omega) => ({ omega, width: 0 }));
   let furthest = eigen.shift;
   poles.forEach((j, slot) => {
     if (!Number.isFinite(eigen.re[j])) return;
-    const [size, im] = [Math.hypot(eigen.re[j], eigen.im[j]), eigen.im[j]];
+    const [size, im, width] = [Math.hypot(eigen.re[j], eigen.im[j]), eigen.im[j], Math.abs(eigen.re[j])];
     furthest = Math.max(furthest, size);
     if (!matters.has(slot)) return;
-    marks.push(im);
+    marks.push({ omega: im, width });
     // A well damped pole peaks away from its Im λ by more than its neighbourhood is wide: stiffness errors
     // see it lower, damping errors at |λ|.
-    if (Math.abs(eigen.re[j]) > 0.05 * im) {
-      marks.push(Math.sqrt(Math.max(0, im ** 2 - eigen.re[j] ** 2)), size);
+    if (width > 0.05 * im) {
+      const lower = Math.sqrt(Math.max(0, im ** 2 - width ** 2));
+      marks.push({ omega: lower, width }, { omega: size, width });
     }
   });
   const ends = Number.isFinite(band.high) ? [band.high] : farthest.map((factor) => factor * furthest);
-  const inside = [...marks, ...ends].filter((omega) => omega >= band.low && omega <= ends[ends.length - 1]);
-  inside.sort((a, b) => a - b);
+  marks.push(...ends.map((omega) => ({ omega, width: 0 })));
+  return subdivided(marks.filter(({ omega }) => omega >= band.low && omega <= ends[ends.length - 1]));
+}
+
+/** A start frequency and the half width of the resonance it belongs to, 0 for none [rad/s]. */
+interface Mark {
+  readonly omega: number;
+  readonly width: number;
+}
+
+/** Resonances this many half widths apart do not blend. */
+const apart = 8;
+
+/**
+ * The marks in order with points between them: the middle, and the quarters where resonances blend, for there the
+ * gain peaks between the poles too.
+ */
+function subdivided(marks: readonly Mark[]): number[] {
+  const sorted = [...marks].sort((a, b) => a.omega - b.omega);
   const grid: number[] = [];
-  inside.forEach((omega, k) => {
-    if (k > 0 && omega > inside[k - 1]) grid.push(0.5 * (omega + inside[k - 1]));
-    if (k === 0 || omega > inside[k - 1]) grid.push(omega);
+  sorted.forEach(({ omega, width }, k) => {
+    const previous = sorted[k - 1];
+    if (previous !== undefined) {
+      const gap = omega - previous.omega;
+      if (gap <= 0) return;
+      const parts = gap < apart * Math.max(width, previous.width) ? 4 : 2;
+      for (let part = 1; part < parts; part++) grid.push(previous.omega + (gap * part) / parts);
+    }
+    grid.push(omega);
   });
   return grid;
 }

@@ -82,7 +82,11 @@ export function marginAt(
     if (settledForGood || restart === mostRestarts) {
       return assemble(adaptive, measure, states, here, { settled, stability, audit, missed });
     }
+    const before = adaptive.order;
     adaptive.enrich(news);
+    if (adaptive.order === before && missed.length === 0) {
+      return assemble(adaptive, measure, states, here, { settled, stability, audit, missed });
+    }
     hints = [...hints, ...missed];
   }
 }

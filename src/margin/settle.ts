@@ -61,9 +61,12 @@ export function settle(
     const checked = measure.check(fullAt, next, lift, setting);
     records.push({ omega: next.omega, reduced: next.value, full: checked.value, order: adaptive.order });
     const gap = Math.abs(next.value - checked.value);
-    if (checked.converged && gap <= options.tolerance * Math.max(1, Math.abs(checked.value)))
-      agreed.push(checked);
+    const agrees = checked.converged && gap <= options.tolerance * Math.max(1, Math.abs(checked.value));
+    if (agrees) agreed.push(checked);
+    const before = adaptive.order;
     adaptive.enrich(checked.directions);
+    // Nothing learnt and nothing agreed: the next turn would be this one again.
+    if (!agrees && adaptive.order === before) return conclude(false, agreed, estimate, records);
   }
 }
 

@@ -10,8 +10,13 @@ import { type Checked, type Critical, realDirections, type Setting } from "./mea
  * eigenvalue of a free body scatters by √eps, hence the coarser bound there.
  */
 export function isUnstable(re: number, im: number, shift: number): boolean {
+  return re > stabilityThreshold(re, im, shift);
+}
+
+/** The real part [1/s] up to which an eigenvalue counts as lying on the axis. */
+export function stabilityThreshold(re: number, im: number, shift: number): number {
   const size = Math.hypot(re, im);
-  return re > (size < 1e-5 * shift ? 1e-6 * shift : 1e-10 * size);
+  return size < 1e-5 * shift ? 1e-6 * shift : 1e-10 * size;
 }
 
 /** Damping ratio ζ = −Re s/|s|. */
