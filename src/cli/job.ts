@@ -34,8 +34,6 @@ export interface JobRequest {
 export interface Opened {
   readonly title: string;
   readonly inputs: readonly InputFile[];
-  /** Units of design variables and operating parameters by name. */
-  readonly units: ReadonlyMap<string, string>;
 }
 
 export interface JobDone {

@@ -32,7 +32,7 @@ export async function runJob(
   output: Output,
   script: URL = workerScript,
 ): Promise<number> {
-  let opened: Opened = { title: basename(request.problem, ".json"), inputs: [], units: new Map() };
+  let opened: Opened = { title: basename(request.problem, ".json"), inputs: [] };
   let best: CommandResult | undefined;
   const folder = (): string => output.out ?? resultsFolder(request, opened.inputs);
   if (output.vectors !== undefined) makeFolderOf(output.vectors);
@@ -54,7 +54,7 @@ export async function runJob(
   }
   const result = done?.result ?? interruptedResult(request, opened, best);
   makeFolder(folder());
-  const summary = summaryText(result, opened.units);
+  const summary = summaryText(result);
   const path = await writeResult(folder(), result, summary);
   if (output.vectors !== undefined && done !== null) await writeVectors(output.vectors, done);
   await printText(output.json ? jsonText(result) : `${summary}\n${path}\n`);

@@ -18,8 +18,7 @@ async function perform(request: JobRequest): Promise<JobDone> {
   const problem = await readProblem(request.problem);
   const { title, inputs } = problem;
   const given = valuesOf(request, problem);
-  const units = new Map([...problem.design, ...problem.envelope].map(({ name, unit }) => [name, unit]));
-  send({ type: "opened", opened: { title, inputs, units } });
+  send({ type: "opened", opened: { title, inputs } });
   return await answer(request, problem, given);
 }
 

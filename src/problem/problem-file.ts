@@ -317,6 +317,10 @@ export interface Term {
    * Name in reports and for `margin.terms`; default the matrix.
    */
   name?: Label;
+  /**
+   * Highest frequency up to which the factor holds [Hz], a number or a formula of constants; the result warns when the answer lies above it.
+   */
+  validToHz?: Formula;
 }
 /**
  * One block of model error s^k·B·Δ·C, scaled so that ‖Δ‖ = 1 is the declared uncertainty.

@@ -44,6 +44,8 @@ export interface Term {
   /** Label in reports: the given name, or the matrix's. */
   readonly name: string;
   readonly factor: Formula;
+  /** The factor holds up to this frequency [Hz]; null: at all. */
+  readonly validToHz: number | null;
   /** JSON pointer of the term in the problem file. */
   readonly pointer: string;
 }

@@ -5,12 +5,12 @@ import { FaultList } from "./fault-list.js";
 import { checkDof } from "./inline-matrix.js";
 import { pointerSegment } from "./json-text.js";
 import { readMargin } from "./margin-settings.js";
-import { type Matrices, readMatrices, TermMatrixChecker, termGroups } from "./matrices.js";
+import { readMatrices } from "./matrices.js";
 import { MatrixFiles } from "./matrix-files.js";
-import { suggest } from "./nearest.js";
 import { isObjectWord, type Parameters, readFormula, readParameters } from "./parameters.js";
 import { readPerturbations } from "./perturbations.js";
-import type { Limit, Problem, Term } from "./problem.js";
+import type { Limit, Problem } from "./problem.js";
+import { readTerms } from "./terms.js";
 
 /**
  * Reads a problem file and the matrix files it names, and checks everything that can be told without
@@ -65,45 +65,6 @@ function readFixed({ content }: ProblemDocument, dofs: number | null, faults: Fa
     faults.add("input.fixed", "/fixed", `all ${dofs} dofs are fixed`, "Leave at least one dof free.");
   }
   return Int32Array.from(seen, (dof) => dof - 1).sort();
-}
-
-function readTerms(
-  { content, spoilt }: ProblemDocument,
-  matrices: Matrices,
-  parameters: Parameters,
-  faults: FaultList,
-): Term[] {
-  const checker = new TermMatrixChecker(matrices, faults);
-  const terms = termGroups.flatMap((group) =>
-    (content.terms?.[group] ?? []).flatMap((written, k) => {
-      if (written === null) return [];
-      const pointer = `/terms/${group}/${k}`;
-      const factor = readFormula(written.factor ?? 1, `${pointer}/factor`, parameters, faults);
-      const matrix = matrices.sound.get(written.matrix);
-      if (matrix !== undefined) checker.check(matrix, group, `${pointer}/matrix`);
-      else if (!matrices.declared.includes(written.matrix)) {
-        const hint = suggest(written.matrix, matrices.declared, "matrix");
-        faults.add(
-          "input.unknown-matrix",
-          `${pointer}/matrix`,
-          `no matrix is called "${written.matrix}"`,
-          hint,
-        );
-      }
-      const name = written.name ?? written.matrix;
-      return factor === null ? [] : [{ group, matrix: written.matrix, name, factor, pointer }];
-    }),
-  );
-  const written = termGroups.some((group) => (content.terms?.[group] ?? []).length > 0);
-  if (!written && content.terms !== undefined && !spoilt.has("terms")) {
-    faults.add(
-      "input.no-terms",
-      "/terms",
-      "the model has no terms",
-      "Add a term under mass and one under stiffness.",
-    );
-  }
-  return terms;
 }
 
 function readBudget({ content }: ProblemDocument, parameters: Parameters, faults: FaultList): Limit[] {

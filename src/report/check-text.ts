@@ -1,20 +1,13 @@
 import type { CheckResult, DefinitenessRow } from "../tuning/check-problem.js";
 import { assignments, counted, numberText, withUnit } from "./number-text.js";
-import {
-  cautionLines,
-  effortText,
-  headLines,
-  type LabelledText,
-  remarkRows,
-  type Units,
-} from "./result-lines.js";
+import { cautionLines, effortText, headLines, type LabelledText, remarkRows } from "./result-lines.js";
 import { clip, columnLines, labelledLines, page } from "./text-layout.js";
 
 const nameWidth = 32;
 
 /** The summary that `check` prints: sound or not and why, the matrices, the structure, the terms. */
-export function checkText(result: CheckResult, units: Units): string {
-  const { definiteness, doubts, warnings, effort } = result;
+export function checkText(result: CheckResult): string {
+  const { definiteness, doubts, warnings, effort, units } = result;
   const sound = result.status === "trusted" ? "sound" : result.status;
   const rows: LabelledText[] = [
     ["model", `${sound}${doubts.length === 0 ? "" : `, ${counted(doubts.length, "fault")}`}`],
@@ -55,7 +48,10 @@ function sizeText({ sizes: { dofs, fixed, free, nonzeros } }: CheckResult): stri
   return `${counted(dofs, "dof")}, ${fixed} fixed, ${free} free, ${counted(nonzeros, "place")} in the merged pattern`;
 }
 
-function definitenessText({ verdict, negative, at, proved }: DefinitenessRow, units: Units): string {
+function definitenessText(
+  { verdict, negative, at, proved }: DefinitenessRow,
+  units: CheckResult["units"],
+): string {
   return [
     verdict === "indefinite" ? `INDEFINITE, ${counted(negative, "negative eigenvalue")}` : verdict,
     ...(at === null || Object.keys(at).length === 0 ? [] : [`worst at ${assignments(at, units)}`]),

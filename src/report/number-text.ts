@@ -25,10 +25,10 @@ export function valueBeside(target: number | null, value: number | null): string
 /** "friction = 0.55, speed = 10 rad/s"; empty without names. */
 export function assignments(
   values: Readonly<Record<string, number>>,
-  units: ReadonlyMap<string, string>,
+  units: Readonly<Record<string, string>>,
 ): string {
   return Object.entries(values)
-    .map(([name, value]) => `${name}${noBreak}=${noBreak}${withUnit(numberText(value), units.get(name))}`)
+    .map(([name, value]) => `${name}${noBreak}=${noBreak}${withUnit(numberText(value), units[name])}`)
     .join(", ");
 }
 
@@ -40,4 +40,9 @@ export function withUnit(text: string, unit: string | undefined): string {
 /** "1 mode", "3 modes". */
 export function counted(count: number, noun: string): string {
   return `${count} ${noun}${count === 1 ? "" : "s"}`;
+}
+
+/** A share of one as a percentage of three digits: "0.0441 %". */
+export function percentText(share: number | null): string {
+  return share === null ? "none" : withUnit(numberText(100 * share, 3), "%");
 }

@@ -8,14 +8,11 @@ import type {
   MarginResult,
   UnperturbedResult,
 } from "../tuning/result.js";
-import { assignments, counted, noBreak, numberText, valueBeside, withUnit } from "./number-text.js";
+import { counted, noBreak, numberText, percentText, withUnit } from "./number-text.js";
 import { pageWidth, wrap } from "./text-layout.js";
 
 /** Label at the left and what stands beside it. */
 export type LabelledText = readonly [label: string, text: string];
-
-/** Units of design variables and operating parameters by name. */
-export type Units = ReadonlyMap<string, string>;
 
 const statusText: Readonly<Record<CommonResult["status"], string>> = {
   trusted: "",
@@ -32,76 +29,49 @@ export function headLines({ title, status }: Pick<CommonResult, "title" | "statu
   return [...wrap(title, pageWidth), ...(said === "" ? [] : [said])];
 }
 
-const decayNames: ReadonlyMap<string, string> = new Map([
-  ["rate", "decay rate [1/s]"],
-  ["ratio", "damping ratio"],
-  ["logDecrement", "logarithmic decrement"],
+const measureNames: ReadonlyMap<string, (value: number | null) => string> = new Map([
+  ["radius", (value) => `stability radius ${numberText(value)}`],
+  ["multiplier", (value) => `critical multiplier ${numberText(value)}`],
+  ["dampingRatio", (value) => `damping ratio ${percentText(value)}`],
 ]);
 
-/** What the value is: "complex stability radius", "critical multiplier", "damping ratio". */
-export function measureText({ measure, kind, lowerBound }: MarginResult): string {
-  const bound = lowerBound ? " (a lower bound)" : "";
-  if (measure === "multiplier") return `critical multiplier${bound}`;
-  if (measure === "decay") return `${decayNames.get(kind ?? "") ?? "decay"}${bound}`;
-  return `${kind ?? ""} stability radius${bound}`.trimStart();
-}
-
-const measureNames: ReadonlyMap<string, string> = new Map([
-  ["radius", "stability radius"],
-  ["multiplier", "critical multiplier"],
-  ["dampingRatio", "damping ratio"],
-]);
-
-/** The measures beside the leading one. */
+/** The measures beside the leading one, at the same operating point. */
 export function measuresText({ measures }: MarginCommandResult): string {
   return Object.entries(measures)
-    .map(([name, value]) => `${measureNames.get(name) ?? name} ${numberText(value)}`)
+    .map(([name, value]) => measureNames.get(name)?.(value) ?? `${name} ${numberText(value)}`)
     .join(", ");
 }
 
-/** "target 1 reached" or "target 1 missed"; empty without a target. */
-export function targetText({ target, meetsTarget }: MarginResult): string {
-  if (target === null || meetsTarget === null) return "";
-  return `target ${numberText(target)} ${meetsTarget ? "reached" : "MISSED"}`;
+/** Places that come next after the one that decides, three at most; empty where growth decides. */
+export function competingText({ competing, margin }: MarginCommandResult): string {
+  if (isGrowth(margin)) return "";
+  return competing
+    .slice(1, 4)
+    .map(({ hz, value }) => `${numberText(value)} at ${withUnit(numberText(hz), "Hz")}`)
+    .join(", ");
 }
 
-export function marginValue({ value, target }: MarginResult): string {
-  return valueBeside(target, value);
-}
-
-/** Where it breaks: "flutter at 391.2 Hz, friction = 0.55". */
-export function breakText({ loss, breaksAtHz, at, value }: MarginResult, units: Units): string {
-  const place = [
-    ...(breaksAtHz === null ? [] : [withUnit(numberText(breaksAtHz), "Hz")]),
-    ...(loss === null ? [] : [`by ${loss}`]),
-  ].join(" ");
-  const known = place === "" && value === null ? "nowhere that was searched" : place;
-  const point = assignments(at, units);
-  return [known, ...(point === "" ? [] : [`at ${point}`])].filter((text) => text !== "").join(", ");
-}
-
-/** "0.834 and 0.8341", null ends open. */
-export function betweenText({ between: [low, high], value }: MarginResult): string {
-  if (value === null && low === null && high === null) return "";
-  const digits = 6;
-  return `${low === null ? "unknown" : numberText(low, digits)} and ${high === null ? "no limit" : numberText(high, digits)}`;
+/** The value says how fast the model grows as it stands. */
+export function isGrowth({ value, measure }: MarginResult): boolean {
+  return value !== null && value < 0 && measure !== "multiplier";
 }
 
 export function stabilityText(unperturbed: UnperturbedResult): string {
   const { stable, unstable, unstableOutside, abscissa, onAxis } = unperturbed;
+  const rate = abscissa === null ? "" : withUnit(numberText(Math.abs(abscissa), 3), "1/s");
   return [
     stable ? "stable as it stands" : `UNSTABLE as it stands: ${counted(unstable, "growing eigenvalue")}`,
-    ...(abscissa === null ? [] : [`largest real part ${withUnit(numberText(abscissa, 3), "1/s")}`]),
+    ...(abscissa === null ? [] : [`${abscissa > 0 ? "fastest growth" : "slowest decay"} ${rate}`]),
     ...(unstableOutside === 0 ? [] : [`${counted(unstableOutside, "growing eigenvalue")} outside the band`]),
     ...(onAxis === 0 ? [] : [`${counted(onAxis, "mode")} on the axis`]),
   ].join(", ");
 }
 
-/** The three least damped eigenvalues. */
+/** The three least damped eigenvalues: "391.2 Hz (0.0397 %)". */
 export function leastDampedText({ leastDamped }: UnperturbedResult): string {
   return leastDamped
     .slice(0, 3)
-    .map(({ hz, ratio }) => `${withUnit(numberText(hz), "Hz")} (ratio${noBreak}${numberText(ratio, 3)})`)
+    .map(({ hz, ratio }) => `${withUnit(numberText(hz), "Hz")}${noBreak}(${percentText(ratio)})`)
     .join(", ");
 }
 
@@ -111,10 +81,16 @@ export function limitText({ used, limit, unit }: LimitResult): string {
   return `${numberText(used)} of ${withUnit(numberText(limit), unit)}${over}`;
 }
 
-export function evidenceText({ witness, audit }: MarginCommandResult): string {
+export function evidenceText({ status, witness, audit }: MarginCommandResult): string {
+  const others = audit.envelope.length;
+  const lowest = audit.envelope[0]?.value;
   return [
+    ...(status === "trusted" ? ["trusted"] : []),
     witness === null ? "no witness" : `witness residual ${numberText(witness.residual, 2)}`,
     `audit off by ${numberText(audit.worst, 2)} at worst in ${counted(audit.evaluations, "full-model evaluation")}`,
+    ...(lowest === undefined
+      ? []
+      : [`${counted(others, "other operating point")}, the lowest at ${numberText(lowest)}`]),
     ...(audit.levelSetClean ? [] : ["the level-set test found a peak that was missed"]),
   ].join(", ");
 }
@@ -128,6 +104,14 @@ export function effortText(effort: EffortResult): string {
     ...(reducedOrder === 0 ? [] : [`reduced order ${reducedOrder}`]),
     ...(reducedEvaluations === 0 ? [] : [`${counted(reducedEvaluations, "reduced evaluation")}`]),
     withUnit(numberText(seconds, 3), "s"),
+  ].join(", ");
+}
+
+export function modelText({ model: { dofs, modesCounted, searchedToHz } }: MarginCommandResult): string {
+  return [
+    counted(dofs, "dof"),
+    ...(modesCounted === null ? [] : [`${counted(modesCounted, "mode")} counted`]),
+    ...(searchedToHz === null ? [] : [`searched up to ${withUnit(numberText(searchedToHz), "Hz")}`]),
   ].join(", ");
 }
 

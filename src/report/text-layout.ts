@@ -4,6 +4,7 @@ import { noBreak } from "./number-text.js";
 export const pageWidth = 80;
 
 const indent = "  ";
+const labelWidth = 28;
 
 /** Lines of at most `width` characters, broken at blanks only: a longer word stands alone and sticks out. */
 export function wrap(text: string, width: number): string[] {
@@ -17,13 +18,24 @@ export function wrap(text: string, width: number): string[] {
   return lines;
 }
 
+type Labelled = readonly (readonly [label: string, text: string])[];
+
 /** Labels at the left, their texts in one column beside them, wrapped to the page; rows without text are left out. */
-export function labelledLines(rows: readonly (readonly [label: string, text: string])[]): string[] {
-  const shown = rows.filter(([, text]) => text !== "");
-  const width = Math.max(0, ...shown.map(([label]) => label.length)) + 2;
-  return shown.flatMap(([label, text]) =>
+export function labelledLines(rows: Labelled): string[] {
+  return labelledBlocks([rows])[0];
+}
+
+/** Several such blocks with one width for the labels of all. */
+export function labelledBlocks(blocks: readonly Labelled[]): string[][] {
+  const shown = blocks.map((rows) => rows.filter(([, text]) => text !== ""));
+  const width = Math.max(0, ...shown.flat().map(([label]) => clip(label, labelWidth).length)) + 2;
+  return shown.map((rows) => linesOf(rows, width));
+}
+
+function linesOf(rows: Labelled, width: number): string[] {
+  return rows.flatMap(([label, text]) =>
     wrap(text, pageWidth - indent.length - width).map(
-      (line, k) => indent + (k === 0 ? label : "").padEnd(width) + line,
+      (line, k) => indent + (k === 0 ? clip(label, labelWidth) : "").padEnd(width) + line,
     ),
   );
 }

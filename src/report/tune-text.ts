@@ -1,52 +1,59 @@
 import type { JudgedDesign, TuneCommandResult } from "../tuning/result.js";
-import { counted, numberText, withUnit } from "./number-text.js";
+import { answerRows } from "./answer-rows.js";
+import { balanceRows } from "./balance-rows.js";
+import { counted, numberText, valueBeside, withUnit } from "./number-text.js";
 import {
-  betweenText,
   cautionLines,
+  competingText,
   effortText,
   evidenceText,
   headLines,
+  isGrowth,
   type LabelledText,
   leastDampedText,
-  marginValue,
   measuresText,
-  measureText,
+  modelText,
   remarkRows,
   stabilityText,
-  targetText,
-  type Units,
 } from "./result-lines.js";
-import { clip, columnLines, labelledLines, page } from "./text-layout.js";
+import { clip, columnLines, labelledBlocks, page } from "./text-layout.js";
 
 const nameWidth = 28;
 
-/** The summary that `tune` prints: the start and the tuned design side by side, how sure it is, what it took. */
-export function tuneText(result: TuneCommandResult, units: Units): string {
-  const { margin, unperturbed } = result;
+/** The summary that `tune` prints: the answer, start and tuned design side by side, how sure it is, what it took. */
+export function tuneText(result: TuneCommandResult): string {
+  const { unperturbed, before } = result;
   const table = [
-    ["", "before", "after", targetText(margin)],
-    ...answerRows(result.before, result, units),
-    ...designRows(result.before, result, units),
-    ...budgetRows(result.before, result),
+    ["", "before", "after"],
+    ...comparedRows(before, result, result.units),
+    ...designRows(before, result, result.units),
+    ...budgetRows(before, result),
   ];
-  const rows: LabelledText[] = [
-    ["margin", measureText(margin)],
-    ["between", betweenText(margin)],
+  const cause: LabelledText[] = [
+    ["next", competingText(result)],
     ["also", measuresText(result)],
+    ...balanceRows(result),
     ["stability", stabilityText(unperturbed)],
     ["least damped", leastDampedText(unperturbed)],
+  ];
+  const work: LabelledText[] = [
     ["starts", startsText(result)],
     ["rounds", roundsText(result)],
     ["steps", result.rounded ? "rounded to feasible purchasable steps and evaluated anew" : ""],
-    ["model", counted(result.model.dofs, "dof")],
+    ["model", modelText(result)],
     ["evidence", evidenceText(result)],
     ["effort", `${effortText(result.effort)}, seed ${result.seed}`],
     ...remarkRows(result),
   ];
-  return page([headLines(result), columnLines(table), labelledLines(rows), cautionLines(result)]);
+  const [answer, ...rest] = labelledBlocks([answerRows(result), cause, work]);
+  return page([headLines(result), answer, columnLines(table), ...rest, cautionLines(result)]);
 }
 
-function answerRows(before: JudgedDesign, after: JudgedDesign, units: Units): string[][] {
+function comparedRows(
+  before: JudgedDesign,
+  after: JudgedDesign,
+  units: TuneCommandResult["units"],
+): string[][] {
   const both = (label: string, cell: (side: JudgedDesign) => string, note = ""): string[] => [
     label,
     cell(before),
@@ -55,30 +62,32 @@ function answerRows(before: JudgedDesign, after: JudgedDesign, units: Units): st
   ];
   const points = Object.keys({ ...before.margin.at, ...after.margin.at });
   return [
-    both("margin", ({ margin }) => marginValue(margin)),
+    both("margin", ({ margin }) =>
+      isGrowth(margin) ? "unstable" : valueBeside(margin.target, margin.value),
+    ),
+    both("growth", ({ unperturbed: { abscissa } }) => numberText(abscissa, 3), "1/s (below 0: dies out)"),
     both("breaks at", ({ margin: { breaksAtHz } }) => numberText(breaksAtHz), "Hz"),
     both("by", ({ margin: { loss } }) => loss ?? "none"),
     ...points.map((name) =>
       both(
         clip(name, nameWidth),
         ({ margin: { at } }) => numberText(at[name] ?? null),
-        worstNote(units.get(name)),
+        `${units[name] ?? ""} (worst)`.trimStart(),
       ),
     ),
-    both("unstable", ({ unperturbed: { unstable } }) => String(unstable), "eigenvalues"),
   ];
 }
 
-function worstNote(unit: string | undefined): string {
-  return withUnit("", unit).trim() === "" ? "(worst)" : `${unit} (worst)`;
-}
-
-function designRows(before: JudgedDesign, after: JudgedDesign, units: Units): string[][] {
+function designRows(
+  before: JudgedDesign,
+  after: JudgedDesign,
+  units: TuneCommandResult["units"],
+): string[][] {
   return Object.keys(after.design).map((name) => [
     clip(name, nameWidth),
     numberText(before.design[name] ?? null),
     numberText(after.design[name]),
-    units.get(name) ?? "",
+    units[name] ?? "",
   ]);
 }
 
@@ -98,11 +107,11 @@ function startsText({ starts }: TuneCommandResult): string {
   if (starts.length === 0) return "";
   const values = starts.map(({ value }) => value);
   const [low, high] = [Math.min(...values), Math.max(...values)];
-  return `${starts.length} led to ${numberText(low)} up to ${numberText(high)} on the reduced model`;
+  return `${counted(starts.length, "ascent")} ended between ${numberText(low)} and ${numberText(high)} on the reduced model`;
 }
 
 function roundsText({ history }: TuneCommandResult): string {
   if (history.length === 0) return "";
   const values = history.map(({ full }) => numberText(full)).join(", ");
-  return `${history.length}, full model: ${values}`;
+  return `${history.length}, confirmed on the full model: ${values}`;
 }

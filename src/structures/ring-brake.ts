@@ -26,7 +26,7 @@ const LAYER_LAW = (layer: string): string => `(h^2*${layer}/4 + h*${layer}^2/2 +
 const NOTES = `Azimuth ring brake of a radio telescope, an invented machine. A steel ring, radii 0.9 and 1.3 m, 28 mm thick, clamped at its inner edge, is gripped by six calipers at 0, 61, 118, 182, 241 and 297 degrees. Unequal spacing matters: equal spacing leaves double modes that flutter at any friction.
 Each caliper has two pads, one a face, +-5 degrees over the outer 60 % of the width: a mass on a contact spring spread over the nodes it touches, and on a bush with a dashpot to the caliper, which stands still.
 Friction acts at the faces, half the thickness from the mid-plane. Where the ring rises by w, the upper pad is pressed more and the lower one less; the two changes of friction point opposite ways on opposite faces, so their moments about the radial axis add: h/2 * friction * contact * (2w - upper - lower) at each node. That is the circulatory term "rub". Not modelled: motion of the ring in its plane, friction that changes with speed, the turning of the steady friction force with the slope.
-Free layers stick to one face inside the rub band, in three pairs of opposite sectors (A: after calipers 1 and 4, B: 2 and 5, C: 3 and 6). Fixed-plane law: the plate's mid-plane is taken as neutral, which overstates loss slightly (Oberst and Frankenfeld 1952 give the exact law). The loss is a viscous equivalent, right at lossHz only: above it the model damps too much, below it too little. lossHz lies at the upper end of the modes that come close to flutter.
+Free layers stick to one face inside the rub band, in three pairs of opposite sectors (A: after calipers 1 and 4, B: 2 and 5, C: 3 and 6). Fixed-plane law: the plate's mid-plane is taken as neutral, which overstates loss slightly (Oberst and Frankenfeld 1952 give the exact law). The loss is a viscous equivalent, right at lossHz only: above it the model damps too much, below it too little; results warn where the answer lies above it (validToHz). lossHz lies at the upper end of the modes that come close to flutter.
 Background damping: the ring's structural loss as stiffness-proportional damping with ratio backgroundRatio at backgroundHz.
 Declared error: the friction coefficient under each pad is off by frictionError, one channel a pad; ||Delta|| = 1 is that error at all twelve pads, in whatever phase.
 What it teaches: two dangers. Near 390 Hz the pads on their bushes meet the ring's wave with 8 nodal diameters at low and middle pressure: flutter at the start, and only dashpots help. At 1.4 to 1.6 kHz waves with 17 and 18 nodal diameters come close to flutter at high pressure, and only layers help. The budget pays for some of each.
@@ -278,6 +278,7 @@ function terms(): ProblemFile["terms"] {
           matrix: bending,
           factor: `modulus*loss/(2*pi*lossHz) * ${LAYER_LAW(thickness)}`,
           name: `loss of ${thickness}`,
+          validToHz: "lossHz",
         }),
       ),
     ],

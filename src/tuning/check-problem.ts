@@ -7,6 +7,7 @@ import { checkPoints } from "./check-samples.js";
 import { describedPoint, doubtsOf, warningsOf } from "./check-verdict.js";
 import { cautions } from "./result.js";
 import type { ReportProgress } from "./session.js";
+import { unitsOf } from "./units.js";
 
 export type { CheckResult, DefinitenessRow, TermRow } from "./check-result.js";
 
@@ -47,6 +48,7 @@ export function checkProblem(problem: Problem, options: CheckOptions, progress: 
     command: "check",
     version: options.version,
     title: problem.title,
+    units: unitsOf(problem),
     status: doubts.length === 0 ? "trusted" : "unsound",
     sizes: {
       dofs: problem.dofs,

@@ -17,6 +17,7 @@ import {
   type UnperturbedResult,
 } from "./result.js";
 import type { Session } from "./session.js";
+import { unitsOf } from "./units.js";
 
 export function recordOf(values: ReadonlyMap<string, number>): Record<string, number> {
   return Object.fromEntries(values);
@@ -57,6 +58,7 @@ export function marginResult(
     command: "margin",
     version,
     title: problem.title,
+    units: unitsOf(problem),
     status: judgement.doubts.length === 0 ? "trusted" : "untrusted",
     ...judgedDesign(session, design, judgement),
     measures: {},
@@ -80,7 +82,7 @@ export function marginResult(
       reducedOrder: order,
     })),
     doubts: judgement.doubts,
-    warnings: warningsOf(session, judgement),
+    warnings: warningsOf(session, design, judgement),
     cautions,
     model: {
       dofs: session.model.order,
@@ -170,10 +172,28 @@ function balanceOf(
   return powerBalance(session.model, state, pencil, point.decisive).rows.map((row) => ({ ...row }));
 }
 
-function warningsOf(session: Session, { point }: Judgement): string[] {
+/** Terms that act at the decisive frequency although their factor no longer holds there. */
+function outsideValidity(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  { at, point: { omega } }: Judgement,
+): string[] {
+  if (omega === null) return [];
+  const { coefficients } = stateAt(session.model, session.valuesAt(design, at));
+  return session.problem.terms.flatMap(({ name, validToHz }, k) => {
+    if (validToHz === null || hz(omega) <= validToHz || coefficients[k] === 0) return [];
+    const [limit, place] = [validToHz, hz(omega)].map((value) => Number(value.toPrecision(6)));
+    return [
+      `The answer lies at ${place} Hz, but the factor of term "${name}" holds up to ${limit} Hz only: outside its validity.`,
+    ];
+  });
+}
+
+function warningsOf(session: Session, design: ReadonlyMap<string, number>, judgement: Judgement): string[] {
   const { problem } = session;
+  const { point } = judgement;
   const { stability } = point;
-  const warnings: string[] = [];
+  const warnings = outsideValidity(session, design, judgement);
   if (stability.unstableOutside > 0) {
     warnings.push(
       `${stability.unstableOutside} unstable eigenvalues lie outside the band; the verdict is about the band only.`,

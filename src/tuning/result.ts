@@ -96,6 +96,8 @@ export interface CommonResult {
   readonly command: "check" | "margin" | "tune";
   readonly version: string;
   readonly title: string;
+  /** Units of design variables and operating parameters by name; "" where the problem gives none. */
+  readonly units: Readonly<Record<string, string>>;
   readonly status: ResultStatus;
   /** Why the numbers are not to be trusted. */
   readonly doubts: readonly string[];

@@ -107,7 +107,7 @@ describe("failures", () => {
 describe("an interrupted run", () => {
   const output = { json: true, quiet: false, out: join(folder, "out"), vectors: undefined };
   const written = () => JSON.parse(readFileSync(join(folder, "out", "result.json"), "utf8"));
-  const opened = { title: "Brake", inputs: marginCase.inputs, units: new Map() };
+  const opened = { title: "Brake", inputs: marginCase.inputs };
 
   /** Runs a thread that opens the problem and works on for ever; a signal comes with the first line of progress. */
   async function interrupted(messages: string): Promise<{ status: number; printed: string }> {
@@ -115,7 +115,7 @@ describe("an interrupted run", () => {
       if (typeof ended === "function") (ended as () => void)();
       return true;
     });
-    const opening = `send({ type: "opened", opened: { ...${JSON.stringify(opened)}, units: new Map() } });`;
+    const opening = `send({ type: "opened", opened: ${JSON.stringify(opened)} });`;
     const progress = `send({ type: "progress", progress: { stage: "working", done: 0, total: null } });`;
     vi.spyOn(process.stderr, "write").mockImplementation(() => process.emit("SIGINT"));
     const status = await runJob(request, output, thread(`${opening} ${messages} ${progress} ${endless}`));

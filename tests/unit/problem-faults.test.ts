@@ -60,6 +60,10 @@ const factor = (text: unknown, more: object = {}) => ({
   ...withTerm({ matrix: "K", factor: text }),
   ...more,
 });
+const withValidity = (validToHz: unknown) => ({
+  ...withTerm({ matrix: "K", validToHz }),
+  design: { a: { range: [0, 1], start: 1 } },
+});
 const at = "input.";
 
 describe("one fault of a problem file is told with code and place:", () => {
@@ -188,6 +192,8 @@ describe("one fault of a problem file is told with code and place:", () => {
       factor("1/a", { design: { a: { range: [0, 1], start: 0 } } }),
       "formula-value /terms/damping/0/factor",
     ],
+    ["a validity that varies", withValidity("2*a"), "formula-name /terms/damping/0/validToHz"],
+    ["a validity of nothing", withValidity("1 - 1"), "value /terms/damping/0/validToHz"],
     ["an infinite formula", factor("1e300*1e300"), "formula-value /terms/damping/0/factor"],
     [
       "operating parameters in a budget",

@@ -87,7 +87,7 @@ describe("a problem file", () => {
         },
         terms: {
           mass: [{ matrix: "Mring", factor: "density*layer" }],
-          damping: [{ matrix: "tail", factor: "tailRate", name: "tail dashpot" }],
+          damping: [{ matrix: "tail", factor: "tailRate", name: "tail dashpot", validToHz: "density/2" }],
           gyroscopic: [{ matrix: "Gring", factor: "speed" }],
           stiffness: [{ matrix: "Mring", factor: 2.5 }],
           circulatory: [{ matrix: "rub", factor: "friction*1.2e8" }],
@@ -111,6 +111,7 @@ describe("a problem file", () => {
     );
     expect(problem.dofs).toBe(size);
     expect([...problem.fixed]).toEqual([2, 6]);
+    expect(problem.terms.map(({ validToHz }) => validToHz)).toEqual([null, 750, null, null, null]);
     expect(problem.envelope).toEqual([
       { name: "friction", low: 0.2, high: 0.6, nominal: 0.4, unit: "" },
       { name: "speed", low: 2, high: 40, nominal: 10, unit: "rad/s" },

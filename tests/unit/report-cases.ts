@@ -2,18 +2,12 @@
 
 import { cautions, type MarginCommandResult, type TuneCommandResult } from "../../src/tuning/result.js";
 
-export const units: ReadonlyMap<string, string> = new Map([
-  ["friction", ""],
-  ["speed", "rad/s"],
-  ["tailRate", "N s/m"],
-  ["layer", "m"],
-]);
-
 export const marginCase: MarginCommandResult = {
   format: "dampwright-result/1",
   command: "margin",
   version: "0.0.0",
   title: "Slewing ring brake, second sample",
+  units: { friction: "", speed: "rad/s", tailRate: "N s/m", layer: "m" },
   status: "trusted",
   doubts: [],
   warnings: ["2 unstable eigenvalues lie outside the band; the verdict is about the band only."],
@@ -59,10 +53,25 @@ export const marginCase: MarginCommandResult = {
     ],
     examined: 3,
   },
-  competing: [{ hz: 391.23456, value: 0.83412345 }],
+  competing: [
+    { hz: 391.23456, value: 0.83412345 },
+    { hz: 612.6, value: 0.95 },
+  ],
   witness: { residual: 3.21e-15, size: 0.834124 },
-  audit: { worst: 2.1e-9, evaluations: 12, frequenciesHz: [], envelope: [], levelSetClean: true },
-  balance: [],
+  audit: {
+    worst: 2.1e-9,
+    evaluations: 12,
+    frequenciesHz: [],
+    envelope: [{ at: { friction: 0.2 }, value: 1.3 }],
+    levelSetClean: true,
+  },
+  balance: [
+    { name: "background", group: "damping", power: 0.94 },
+    { name: "loss of layer", group: "damping", power: 0.052 },
+    { name: "tail", group: "damping", power: 0.008 },
+    { name: "rub", group: "circulatory", power: -0.87 },
+    { name: "declared error", group: "model error", power: -0.13 },
+  ],
   convergence: [],
 };
 
