@@ -9,6 +9,8 @@ export interface LimitUse {
   readonly unit: string;
 }
 
+const atEnd = 1e-9;
+
 /**
  * The designs of a problem as points of [0, 1]ⁿ, with its limits as dimensionless functions
  * g = used/|limit| − limit/|limit| ≤ 0 (used itself where the limit is 0).
@@ -26,9 +28,14 @@ export class DesignSpace {
     return this.variables.length;
   }
 
-  /** Design values by name. */
+  /** Design values by name; what a search leaves within a billionth of an end is put on it. */
   valuesOf(x: readonly number[]): Map<string, number> {
-    return new Map(this.variables.map(({ name, low, high }, i) => [name, low + x[i] * (high - low)]));
+    return new Map(
+      this.variables.map(({ name, low, high }, i) => {
+        if (x[i] < atEnd) return [name, low];
+        return [name, x[i] > 1 - atEnd ? high : low + x[i] * (high - low)];
+      }),
+    );
   }
 
   unitOf(values: ReadonlyMap<string, number>): number[] {
