@@ -37,7 +37,8 @@ export function judge(
   let checks: EnvelopeCheck[] = [];
   for (let round = 0; ; round++) {
     progress({ stage: "settling the worst operating point", done: round, total: null });
-    const at = fixed ?? settledWorst(session, design, [...known, ...checks.map((check) => check.at)]).at;
+    const points = [...known, ...checks.map((check) => check.at)];
+    const at = fixed ?? settledWorst(session, design, points, "fine", 1e-6, checks[0]?.at).at;
     progress({ stage: "gathering evidence", done: round, total: null });
     const point = marginAt(adaptive, measure, session.valuesAt(design, at), setting);
     if (fixed !== undefined) return { at, point, envelope: [], doubts: point.doubts };
@@ -84,21 +85,30 @@ export function settleAt(
   });
 }
 
-/** Worst operating point on which the reduced and the full model agree. */
+/**
+ * Worst operating point on which the reduced and the full model agree.
+ *
+ * @param rival - a point that the full model has found low: it stands against what the reduced model finds, whose
+ * word can be off by more than two nearly equal minima lie apart.
+ */
 export function settledWorst(
   session: Session,
   design: ReadonlyMap<string, number>,
   known: readonly ReadonlyMap<string, number>[],
   resolution: Resolution = "fine",
   tolerance = 1e-6,
+  rival?: ReadonlyMap<string, number>,
 ): EnvelopeCheck {
-  const visited: ReadonlyMap<string, number>[] = [];
-  let best: EnvelopeCheck | undefined;
+  const visited: ReadonlyMap<string, number>[] = rival === undefined ? [] : [rival];
+  let best: EnvelopeCheck | undefined =
+    rival === undefined ? undefined : { at: rival, value: settleAt(session, design, rival, tolerance).value };
   for (let round = 0; round < mostRounds; round++) {
-    const found =
+    const low =
       best === undefined
-        ? session.worstPoints(design, known, resolution)[0]
-        : session.worstPoints(design, [...known, ...visited], "local")[0];
+        ? session.worstPoints(design, known, resolution)
+        : session.worstPoints(design, [...known, ...visited], "local");
+    const found = low.find(({ at }) => visited.every((other) => !samePoint(session, other, at, 1e-9)));
+    if (found === undefined) break;
     const slack = tolerance * Math.max(1, Math.abs(found.value));
     if (best !== undefined && found.value >= best.value - slack) break;
     const { value } = settleAt(session, design, found.at, tolerance);
@@ -137,7 +147,8 @@ function samePoint(
   session: Session,
   a: ReadonlyMap<string, number>,
   b: ReadonlyMap<string, number>,
+  within = 1e-3,
 ): boolean {
   const [x, y] = [session.operation.unitOf(a), session.operation.unitOf(b)];
-  return x.every((xi, i) => Math.abs(xi - y[i]) < 1e-3);
+  return x.every((xi, i) => Math.abs(xi - y[i]) < within);
 }
