@@ -33,7 +33,7 @@ export function decay(kind: DecayKind): Measure {
       const criticals = all.filter((critical) => critical.value <= near).slice(0, 6);
       return { value, criticals, eigenvalues: upperHalf(eigen) };
     },
-    check: (pencilAt, critical, lift) =>
-      checkEigenvalue(pencilAt(1), critical, lift, (re, im) => decayOf(kind, re, im)),
+    check: (pencilAt, critical, lift, setting) =>
+      checkEigenvalue(pencilAt(1), critical, lift, setting.shift, (re, im) => decayOf(kind, re, im)),
   };
 }

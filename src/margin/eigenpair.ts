@@ -48,11 +48,13 @@ export function refineEigenpair(
   normaliseInPlace(y);
   let [re, im] = [guessRe, guessIm];
   let residual = Number.POSITIVE_INFINITY;
+  // At a rigid motion λ = 0 of a free body ‖P(λ)‖ itself may vanish.
+  const nearNorm = pencilNorm(pencil, factor.sRe, factor.sIm);
   for (let step = 0; step < stepsPerFactor; step++) {
     [re, im] = rayleighRoot(pencil, y, x, re, im);
     const r = applyPencil(pencil, re, im, x);
     const previous = residual;
-    residual = norm2(r) / pencilNorm(pencil, re, im);
+    residual = norm2(r) / Math.max(pencilNorm(pencil, re, im), nearNorm);
     if (residual < tolerance || (residual > 0.5 * previous && residual < good)) break;
     correct(x, r, (b) => factor.solveInPlace(b));
     correct(y, applyPencilAdjoint(pencil, re, im, y), (b) => factor.solveAdjointInPlace(b));

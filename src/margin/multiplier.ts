@@ -11,7 +11,7 @@ import {
   realDirections,
   type Setting,
 } from "./measure.js";
-import { checkEigenvalue, stabilityThreshold } from "./stability.js";
+import { checkEigenvalue, isUnstable, stabilityThreshold } from "./stability.js";
 
 /**
  * Paths are followed up to this multiple of the declared feeding terms, or of what makes them weigh as much as the
@@ -174,7 +174,10 @@ function check(
   setting: Setting,
 ): Checked {
   if (critical.kind === "peak") throw new Error("a multiplier has no peaks");
-  if (critical.kind === "eigenvalue") return checkEigenvalue(pencilAt(0), critical, lift, () => 0);
+  if (critical.kind === "eigenvalue")
+    return checkEigenvalue(pencilAt(0), critical, lift, setting.shift, (re, im) =>
+      isUnstable(re, im, setting.shift) ? 0 : Number.POSITIVE_INFINITY,
+    );
   const omega = resting(critical.omega, setting);
   const crossing = refineCrossing(pencilAt, critical.value, omega, lift(critical.right), lift(critical.left));
   return {

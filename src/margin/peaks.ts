@@ -8,6 +8,7 @@ import { ownPeak, transferInto } from "./spectral-form.js";
 export interface Peak {
   /** [rad/s] */
   readonly omega: number;
+  /** Infinity when the gain grows without bound towards infinite frequency; `omega` is just far up then. */
   readonly sigma: number;
 }
 
@@ -57,9 +58,18 @@ export function findPeaks(form: SpectralForm, band: Band, options: PeakOptions =
     const high = grid[Math.min(grid.length - 1, k + 1)];
     peaks.push(polishPeak(gain, low, grid[k], high, sigma[k], options.accuracy));
   }
+  const last = grid.length - 1;
+  if (!Number.isFinite(band.high) && sigma[last] > 0 && growsWithoutBound(gain, grid[last], sigma[last])) {
+    return [{ omega: grid[last], sigma: Number.POSITIVE_INFINITY }];
+  }
   peaks.sort((a, b) => b.sigma - a.sigma);
   const top = peaks[0]?.sigma ?? 0;
   return distinct(peaks.filter((peak) => peak.sigma >= options.keep * top));
+}
+
+/** Whether a gain still grows like ω between ω/1000 and ω, where every finite pole lies far below. */
+export function growsWithoutBound(gain: (omega: number) => number, omega: number, sigma: number): boolean {
+  return sigma > 500 * gain(1e-3 * omega);
 }
 
 /**

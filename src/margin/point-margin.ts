@@ -128,7 +128,7 @@ function missedOnReduced(
   setting: Setting,
   { decisive }: Settled,
 ): number[] {
-  if (measure.name !== "radius" || decisive?.found.kind !== "peak") return [];
+  if (measure.name !== "radius" || decisive?.found.kind !== "peak" || decisive.value === 0) return [];
   return missedPeaks(adaptive.reducedAt(state), setting, decisive.found.gain.sigma);
 }
 

@@ -10,15 +10,27 @@ import {
   realDirections,
   type Setting,
 } from "./measure.js";
-import { findPeaks } from "./peaks.js";
-import { spectralForm } from "./spectral-form.js";
-import { checkEigenvalue, unstableCriticals, upperHalf } from "./stability.js";
+import { findPeaks, growsWithoutBound } from "./peaks.js";
+import { poleOnAxis, spectralForm } from "./spectral-form.js";
+import {
+  checkEigenvalue,
+  eigenvalueCritical,
+  isUnstable,
+  unstableCriticals,
+  upperHalf,
+} from "./stability.js";
 
 function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Setting): Estimate {
-  const form = spectralForm(pencilAt(1), setting.shift);
+  const pencil = pencilAt(1);
+  const form = spectralForm(pencil, setting.shift);
   const eigenvalues = upperHalf(form.eigen);
   const unstable = unstableCriticals(form.eigen, setting);
   if (unstable.length > 0) return { value: unstable[0].value, criticals: unstable, eigenvalues };
+  const undamped = poleOnAxis(form, pencil, setting.band);
+  if (undamped >= 0) {
+    const critical = eigenvalueCritical(form.eigen, undamped, 0);
+    return { value: 0, criticals: [critical], eigenvalues };
+  }
   const criticals = findPeaks(form, setting.band, setting.peaks)
     .filter((peak) => peak.sigma > 0)
     .map(({ omega, sigma }) => ({ kind: "peak" as const, value: 1 / sigma, omega, sigma }));
@@ -33,10 +45,18 @@ function check(
 ): Checked {
   const pencil = pencilAt(1);
   if (critical.kind !== "peak")
-    return checkEigenvalue(pencil, critical, lift, (re) => -re / setting.omegaRef);
-  const gain = channelGain(pencil, pencil.factor(0, critical.omega));
+    return checkEigenvalue(pencil, critical, lift, setting.shift, (re, im) => {
+      if (isUnstable(re, im, setting.shift)) return -re / setting.omegaRef;
+      // Left of the axis the reduced model is refuted: no limit here.
+      return critical.value === 0 && !isUnstable(-re, im, setting.shift) ? 0 : Number.POSITIVE_INFINITY;
+    });
+  const gainAt = (omega: number) => channelGain(pencil, pencil.factor(0, omega));
+  const gain = gainAt(critical.omega);
+  const unbounded =
+    critical.sigma === Number.POSITIVE_INFINITY &&
+    growsWithoutBound((omega) => gainAt(omega).sigma, critical.omega, gain.sigma);
   return {
-    value: 1 / gain.sigma,
+    value: unbounded ? 0 : 1 / gain.sigma,
     omega: critical.omega,
     error: gain.backwardError,
     converged: gain.settled && Number.isFinite(gain.sigma),
@@ -46,8 +66,8 @@ function check(
 }
 
 /**
- * Complex stability radius r = 1 / sup_ω σ_max(H(iω)) of the stacked block; where the model is
- * unstable in the band, minus its growth −max Re s / ω_ref, which a search can climb through zero.
+ * Complex stability radius r = 1 / sup_ω σ_max(H(iω)) of the stacked block, 0 where an undamped mode that B and C
+ * see lies on the axis or the gain grows without bound; where the model is unstable in the band, minus its growth −max Re s / ω_ref, which a search can climb through zero.
  *
  * Source: Hinrichsen & Pritchard, Systems & Control Letters 7 and 8 (1986).
  */

@@ -3,6 +3,7 @@ import { type ComplexMatrix, complexZeros } from "../numerics/dense/matrix.js";
 import { complexMultiply, multiplyTransposed } from "../numerics/dense/products.js";
 import { type QuadraticEigen, quadraticEigen } from "../numerics/dense/quadratic-eigen.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
+import { type Band, inBand } from "./band.js";
 
 /**
  * H(s) in pole–residue form, one frequency in O(poles · p · m):
@@ -24,11 +25,16 @@ export interface SpectralForm {
   readonly residueIm: Float64Array;
   /** What the infinite poles add to C P⁻¹B, p×m: a constant. */
   readonly constant: Float64Array;
+  /** The pencil itself, to be solved anew at each frequency, where (nearly) defective poles spoil the sum; else null. */
+  readonly direct: DensePencil | null;
   /** ‖R_j‖_F. */
   readonly residueNorm: Float64Array;
   /** The same over the stiffness-like columns alone. */
   readonly inertNorm: Float64Array;
 }
+
+/** Relative error of the sum, met at one trial frequency, from which on the pencil is solved instead. */
+const worstSum = 1e-9;
 
 /** Relative distance from the axis below which a pole counts as lying on it. */
 const onAxis = 1e-11;
@@ -74,9 +80,10 @@ export function spectralForm(pencil: DensePencil, shift: number): SpectralForm {
   });
   const isRegular = eigen.re.every((value) => Number.isFinite(value));
   const constant = isRegular ? new Float64Array(size) : constantPart(pencil, eigen, poles, residueRe);
-  const form = {
+  const form: SpectralForm = {
     eigen,
     constant,
+    direct: null,
     outputs,
     inputs,
     powers,
@@ -87,7 +94,35 @@ export function spectralForm(pencil: DensePencil, shift: number): SpectralForm {
     inertNorm,
   };
   dropUnseenAxisPoles(form);
-  return form;
+  return eigen.defective || !sumHolds(form, pencil) ? { ...form, direct: pencil } : form;
+}
+
+/** Compares the sum with a solve near the pole with the largest residue: there cancellation is worst. */
+function sumHolds(form: SpectralForm, pencil: DensePencil): boolean {
+  const { eigen, poles, residueNorm, outputs, inputs } = form;
+  if (poles.length === 0 || outputs === 0 || inputs === 0) return true;
+  const slot = residueNorm.indexOf(residueNorm.reduce((high, norm) => Math.max(high, norm), 0));
+  const omega = 1.1 * Math.hypot(eigen.re[poles[slot]], eigen.im[poles[slot]]) + 0.1 * eigen.shift;
+  const [sum, solved] = [complexZeros(outputs, inputs), complexZeros(outputs, inputs)];
+  transferInto(sum, form, omega);
+  solveInto(solved, pencil, omega);
+  let [error, size] = [0, 0];
+  for (let t = 0; t < sum.re.length; t++) {
+    error = Math.max(error, Math.hypot(sum.re[t] - solved.re[t], sum.im[t] - solved.im[t]));
+    size = Math.max(size, Math.hypot(solved.re[t], solved.im[t]));
+  }
+  return error <= worstSum * size;
+}
+
+/** C P(iω)⁻¹ B diag((iω)^k) by a solve. */
+function solveInto(h: ComplexMatrix, pencil: DensePencil, omega: number): void {
+  const { inputMatrix, outputTransposedMatrix, powers } = pencil;
+  const responses = asComplex({ ...inputMatrix, values: inputMatrix.values.slice() });
+  pencil.factor(0, omega).solveInPlace(responses);
+  const outputs = complexMultiply(realTransposed(outputTransposedMatrix), responses);
+  h.re.set(outputs.re);
+  h.im.set(outputs.im);
+  applyPowers(h.re, h.im, h.rows, powers, omega);
 }
 
 /** C P(s₀)⁻¹ B, where every term of the sum stands at its residue, less the finite poles and their conjugates. */
@@ -115,6 +150,10 @@ function constantPart(
 
 /** H(iω), written into `h` (p×m). A pole that lies exactly at iω gives an infinite gain. */
 export function transferInto(h: ComplexMatrix, form: SpectralForm, omega: number): void {
+  if (form.direct !== null) {
+    solveInto(h, form.direct, omega);
+    return;
+  }
   const { eigen, outputs, inputs, powers, poles, residueRe, residueIm, residueNorm } = form;
   const { shift, thetaRe, thetaIm } = eigen;
   const size = outputs * inputs;
@@ -169,6 +208,23 @@ export function ownPeak(form: SpectralForm, slot: number): number {
   const stiff = inertNorm[slot];
   const viscous2 = Math.max(0, residueNorm[slot] ** 2 - stiff ** 2);
   return Math.hypot(stiff, Math.hypot(eigen.re[j], omega) * Math.sqrt(viscous2)) / distance;
+}
+
+/**
+ * Index of a finite pole in the band that lies on the axis and is seen by B and C: there the gain is infinite. One
+ * at s = 0 counts when S is singular to rounding, for a creeping mode is no rigid one. −1 when there is none.
+ */
+export function poleOnAxis(form: SpectralForm, pencil: DensePencil, band: Band): number {
+  const { eigen, poles, residueNorm } = form;
+  const { shift } = eigen;
+  const slot = poles.findIndex((j, k) => {
+    const [re, im] = [eigen.re[j], eigen.im[j]];
+    if (!(residueNorm[k] > 0) || !inBand(band, im)) return false;
+    if (Math.hypot(re, im) < 1e-5 * shift)
+      return !(factorDense(pencil.displacementMatrix).pivotRatio > 1e-14);
+    return Math.abs(re) <= onAxis * im;
+  });
+  return slot < 0 ? -1 : poles[slot];
 }
 
 function applyPowers(

@@ -45,17 +45,21 @@ export function selectEigenvalues(
     const re = eigen.re[j];
     const im = eigen.im[j];
     if (im < 0 || !Number.isFinite(re) || !pass(re, im)) continue;
-    const right = complexColumn(eigen.right, j);
-    found.push({
-      kind: "eigenvalue",
-      value: value(re, im),
-      re,
-      omega: im,
-      right,
-      left: leftVector(eigen, j),
-    });
+    found.push(eigenvalueCritical(eigen, j, value(re, im)));
   }
   return found.sort((a, b) => a.value - b.value);
+}
+
+export function eigenvalueCritical(eigen: QuadraticEigen, j: number, value: number): Critical {
+  const right = complexColumn(eigen.right, j);
+  return {
+    kind: "eigenvalue",
+    value,
+    re: eigen.re[j],
+    omega: eigen.im[j],
+    right,
+    left: leftVector(eigen, j),
+  };
 }
 
 /** y_j with yᴴ the j-th row of Z. */
@@ -78,11 +82,14 @@ export function checkEigenvalue(
   pencil: Pencil,
   critical: Critical,
   lift: (reduced: ComplexVector) => ComplexVector,
+  shift: number,
   value: (re: number, im: number) => number,
 ): Checked {
   if (critical.kind === "peak") throw new Error("a peak is no eigenvalue");
-  const factor = pencil.factor(critical.re, critical.omega);
   const { re, omega } = critical;
+  // A rigid motion makes P(0) singular exactly; a little to the right the iteration works as well.
+  const aside = Math.hypot(re, omega) < 1e-6 * shift ? 1e-4 * shift : 0;
+  const factor = pencil.factor(re + aside, omega);
   const pair = refineEigenpair(pencil, re, omega, lift(critical.right), lift(critical.left), factor);
   return {
     value: value(pair.re, pair.im),

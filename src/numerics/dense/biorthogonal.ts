@@ -10,6 +10,7 @@ const clusterWidth = 1e-6;
  * eigenvalues are left alone, and so are clusters whose Gram matrix is singular to rounding.
  *
  * @param least - Eigenvalues of smaller modulus are left alone too.
+ * @returns whether every cluster could be matched.
  */
 export function biorthogonalise(
   re: Float64Array,
@@ -17,8 +18,10 @@ export function biorthogonalise(
   right: ComplexMatrix,
   left: ComplexMatrix,
   least: number,
-): void {
-  for (const cluster of clustersOf(re, im, least)) matchCluster(cluster, right, left);
+): boolean {
+  let matched = true;
+  for (const cluster of clustersOf(re, im, least)) matched = matchCluster(cluster, right, left) && matched;
+  return matched;
 }
 
 /** Index sets of two and more, joined by single links. */
@@ -46,7 +49,7 @@ function clustersOf(re: Float64Array, im: Float64Array, least: number): number[]
 }
 
 /** Y ← Y G⁻ᴴ with G = YᴴX of the cluster's columns. */
-function matchCluster(cluster: readonly number[], right: ComplexMatrix, left: ComplexMatrix): void {
+function matchCluster(cluster: readonly number[], right: ComplexMatrix, left: ComplexMatrix): boolean {
   const k = cluster.length;
   const n = right.rows;
   const gram = complexZeros(k, k);
@@ -69,7 +72,7 @@ function matchCluster(cluster: readonly number[], right: ComplexMatrix, left: Co
     }
   });
   const lu = factorDenseComplex(gram);
-  if (!(lu.pivotRatio > 1e-14)) return;
+  if (!(lu.pivotRatio > 1e-14)) return false;
   lu.solveInPlace(adjoint);
   cluster.forEach((a, row) => {
     for (let i = 0; i < n; i++) {
@@ -77,4 +80,5 @@ function matchCluster(cluster: readonly number[], right: ComplexMatrix, left: Co
       left.im[i + a * n] = -adjoint.im[row + i * k];
     }
   });
+  return true;
 }

@@ -28,6 +28,8 @@ export interface QuadraticEigen {
   readonly right: ComplexMatrix;
   /** Z = (Y₁ + Y₂)ᴴ P(s₀)⁻¹: rows are left eigenvectors yᴴ of P, scaled to the residues. */
   readonly left: ComplexMatrix;
+  /** A finite eigenvalue lacks vectors: the resolvent formula fails. */
+  readonly defective: boolean;
 }
 
 /** Values only; see `QuadraticEigen`. `shift` s₀ > 0 in the units of s, of the size of the |λ| that matter. */
@@ -51,9 +53,11 @@ export function quadraticEigen(
 ): QuadraticEigen {
   const n = m.rows;
   const { companion, inverse, shift: used } = shiftedCompanion(m, c, s, shift);
-  const { re: thetaRe, im: thetaIm, right, left } = eigen(companion);
-  const leastTheta = infiniteBelow / used;
-  biorthogonalise(thetaRe, thetaIm, right, left, leastTheta);
+  const { re: thetaRe, im: thetaIm, right, left, defective: flags } = eigen(companion);
+  const least = infiniteBelow / used;
+  const matched = biorthogonalise(thetaRe, thetaIm, right, left, least);
+  const defective =
+    !matched || flags.some((flag, j) => flag === 1 && Math.hypot(thetaRe[j], thetaIm[j]) >= least);
   const x = complexZeros(n, 2 * n);
   const z = complexZeros(2 * n, n);
   for (let j = 0; j < 2 * n; j++) {
@@ -79,7 +83,15 @@ export function quadraticEigen(
       z.im[j + k * 2 * n] = im;
     }
   }
-  return { shift: used, thetaRe, thetaIm, ...fromTheta(thetaRe, thetaIm, used), right: x, left: z };
+  return {
+    shift: used,
+    thetaRe,
+    thetaIm,
+    ...fromTheta(thetaRe, thetaIm, used),
+    right: x,
+    left: z,
+    defective,
+  };
 }
 
 /**
