@@ -1,9 +1,20 @@
 #!/usr/bin/env node
 import { CommanderError } from "commander";
 import { ExpectedError, InputError } from "../errors.js";
+import { removeUnfinished } from "../problem/write-aside.js";
 import { buildProgram } from "./program.js";
 
 const bug = 70;
+const interrupted = 130;
+
+// A running job takes the first signal for itself. What comes while files are written ends the process, tidily.
+for (const signal of ["SIGINT", "SIGTERM"] as const) {
+  process.on(signal, () => {
+    if (process.listenerCount(signal) > 1) return;
+    removeUnfinished();
+    process.exit(interrupted);
+  });
+}
 
 /** Says on standard error what went wrong and tells the exit status. */
 function explain(error: unknown): number {

@@ -9,6 +9,8 @@ export interface NamedValue {
   readonly value: number;
   /** For messages: `--at` or `result.json /design/layer`. */
   readonly at: string;
+  /** Typed by a person, who can only mean what can be bought; a result may hold a design between two steps. */
+  readonly typed: boolean;
 }
 
 /** A design variable or an operating parameter. */
@@ -17,6 +19,8 @@ export interface Ranged {
   readonly low: number;
   readonly high: number;
   readonly unit: string;
+  /** Purchasable step counted from `low`; null or absent: any value. */
+  readonly step?: number | null;
 }
 
 const decimal = /^[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d+)?$/i;
@@ -33,7 +37,7 @@ export function parseAssignments(lists: readonly string[], flag: string): NamedV
     const [name, written, ...rest] = piece.split("=").map((part) => part.trim());
     const value = Number(written);
     if (name !== "" && decimal.test(written ?? "") && Number.isFinite(value) && rest.length === 0) {
-      values.set(name, { name, value, at: flag });
+      values.set(name, { name, value, at: flag, typed: true });
       continue;
     }
     const message = `"${piece.trim()}" is no assignment of a number`;
@@ -54,7 +58,7 @@ export async function readDesign(path: string): Promise<NamedValue[]> {
   const faults: Fault[] = [];
   const values = Object.entries(design).flatMap(([name, value]) => {
     const at = `${path} /design/${name}`;
-    if (typeof value === "number") return [{ name, value, at }];
+    if (typeof value === "number") return [{ name, value, at, typed: false }];
     const message = `expected a number, found ${JSON.stringify(value)}`;
     faults.push({ code: "input.design-value", at, message, hint: "Write the value as a number." });
     return [];
@@ -89,7 +93,7 @@ export function resolveValues(
   faults: Fault[],
 ): Map<string, number> {
   const values = new Map<string, number>();
-  for (const { name, value, at } of given) {
+  for (const { name, value, at, typed } of given) {
     const known = declared.find((each) => each.name === name);
     if (known === undefined) {
       const names = declared.map((each) => each.name);
@@ -104,7 +108,28 @@ export function resolveValues(
         message,
         hint: "Stay in the range, or widen it in the problem file.",
       });
-    } else values.set(name, value);
+    } else {
+      const near = typed ? stepsAround(known, value) : [];
+      if (near.length === 0) values.set(name, value);
+      else faults.push(offStep(known, value, near, at));
+    }
   }
   return values;
+}
+
+/** The steps below and above a value, inside the range; none when it lies on a step. */
+function stepsAround({ low, high, step }: Ranged, value: number): number[] {
+  if (step === null || step === undefined) return [];
+  const count = (value - low) / step;
+  // Decimal steps such as 0.1 are not exact in binary.
+  if (Math.abs(count - Math.round(count)) < 1e-6) return [];
+  return [Math.floor(count), Math.ceil(count)]
+    .map((k) => Number((low + k * step).toPrecision(12)))
+    .filter((near) => near <= high);
+}
+
+function offStep({ name, step, unit }: Ranged, value: number, near: readonly number[], at: string): Fault {
+  const label = unit === "" ? "" : ` ${unit}`;
+  const message = `${name} = ${value} is not on its steps of ${step}${label}`;
+  return { code: "input.step", at, message, hint: `Use ${near.join(" or ")}${label}.` };
 }

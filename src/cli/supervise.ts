@@ -12,7 +12,7 @@ export interface JobListener {
 
 /**
  * Runs a job in a thread of its own and waits for it. Of SIGINT and SIGTERM the first one abandons the job, and
- * the caller has the rest of the two seconds in which a command must end; a second one kills the process.
+ * the caller has the rest of the two seconds in which a command must end; a second one ends the process (`main`).
  *
  * @param script - the thread's code, which sends `JobMessage`s.
  * @returns null when interrupted.

@@ -1,7 +1,15 @@
 import { randomUUID } from "node:crypto";
+import { rmSync } from "node:fs";
 import { type FileHandle, open, rename, rm } from "node:fs/promises";
 import { basename, dirname, join } from "node:path";
 import { InputError } from "../errors.js";
+
+const unfinished = new Set<string>();
+
+/** Removes the temporary files of all writes under way: for a process that is about to end without waiting for them. */
+export function removeUnfinished(): void {
+  for (const aside of unfinished) rmSync(aside, { force: true });
+}
 
 /**
  * Writes a file so that it stands there whole or not at all: to a temporary name in the same folder,
@@ -16,6 +24,7 @@ export async function writeAside(
 ): Promise<void> {
   const aside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
   let file: FileHandle | undefined;
+  unfinished.add(aside);
   try {
     file = await open(aside, "wx");
     for await (const chunk of chunks) await file.writeFile(chunk);
@@ -26,6 +35,8 @@ export async function writeAside(
     await file?.close().catch(() => undefined);
     await rm(aside, { force: true }).catch(() => undefined);
     throw writingFault(error, path);
+  } finally {
+    unfinished.delete(aside);
   }
 }
 

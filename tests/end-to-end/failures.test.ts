@@ -1,6 +1,6 @@
-import { existsSync, readFileSync, writeFileSync } from "node:fs";
+import { existsSync, readdirSync, readFileSync, writeFileSync } from "node:fs";
 import { join } from "node:path";
-import { describe, expect, it } from "vitest";
+import { describe, expect, it, vi } from "vitest";
 import { newFolder, oneMass, run, start, writeProblem } from "./command-line.js";
 
 describe("bad input ends with 2, nothing on standard output, and", () => {
@@ -68,6 +68,20 @@ describe("what is no fault of the input", () => {
 });
 
 describe("an interrupted run", () => {
+  it("leaves no half-written file when the signal comes while files are written", async () => {
+    const folder = newFolder();
+    const preload = `
+      import files from "node:fs/promises";
+      import { syncBuiltinESMExports } from "node:module";
+      files.rename = () => new Promise((done) => setTimeout(done, 60_000));
+      syncBuiltinESMExports();`;
+    const { child, ended } = start(["sample", "friction-oscillator", "--out", "."], folder, preload);
+    await vi.waitFor(() => expect(readdirSync(folder)).toHaveLength(1), { timeout: 20_000 });
+    child.kill("SIGINT");
+    expect((await ended).status).toBe(130);
+    expect(readdirSync(folder)).toEqual([]);
+  });
+
   it.each(["SIGINT", "SIGTERM"] as const)(
     "ends with 130 within two seconds of %s and leaves a result",
     async (signal) => {

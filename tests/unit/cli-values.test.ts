@@ -27,8 +27,8 @@ describe("assignments", () => {
   it("are read from several lists, the last one of a name counting", () => {
     const values = parseAssignments(["a=1, b=-2e-3", "a=.5"], "--set");
     expect(values).toEqual([
-      { name: "a", value: 0.5, at: "--set" },
-      { name: "b", value: -0.002, at: "--set" },
+      { name: "a", value: 0.5, at: "--set", typed: true },
+      { name: "b", value: -0.002, at: "--set", typed: true },
     ]);
   });
 
@@ -73,6 +73,29 @@ describe("assignments", () => {
     expect(faults[1]?.message).toContain("[1, 2] rad/s");
   });
 
+  const layer = { name: "layer", low: 0.1, high: 0.45, unit: "mm", step: 0.1 };
+  const layerOf = (value: number, typed: boolean, faults: Fault[]) =>
+    resolveValues([{ name: "layer", value, at: "--set", typed }], [layer], "design variable", faults);
+
+  it("off the steps of a variable are refused with the two nearest, or the one in the range", () => {
+    for (const [value, hint] of [
+      [0.25, "Use 0.2 or 0.3 mm."],
+      [0.45, "Use 0.4 mm."],
+    ] as const) {
+      const faults: Fault[] = [];
+      layerOf(value, true, faults);
+      expect(faults).toMatchObject([{ code: "input.step", at: "--set", hint }]);
+    }
+  });
+
+  it("on a step that binary numbers cannot hold are taken, and any value that a result has", () => {
+    const faults: Fault[] = [];
+    // 0.30000000000000004 = 0.1 + 0.2.
+    expect(layerOf(0.1 + 2 * 0.1, true, faults).size).toBe(1);
+    expect(layerOf(0.25, false, faults).size).toBe(1);
+    expect(faults).toEqual([]);
+  });
+
   it("have nothing to name where the problem declares nothing", () => {
     const faults: Fault[] = [];
     resolveValues(parseAssignments(["a=1"], "--at"), [], "operating parameter", faults);
@@ -89,7 +112,9 @@ describe("the design of a result file", () => {
 
   it("is read with the place of each value", async () => {
     const path = write('{"design":{"layer":0.002},"status":"trusted"}');
-    expect(await readDesign(path)).toEqual([{ name: "layer", value: 0.002, at: `${path} /design/layer` }]);
+    expect(await readDesign(path)).toEqual([
+      { name: "layer", value: 0.002, at: `${path} /design/layer`, typed: false },
+    ]);
   });
 
   it.each([
@@ -108,6 +133,7 @@ describe("the design of a result file", () => {
 
 describe("the exit status", () => {
   const { margin } = marginCase;
+  const open = (low: number | null, high: number | null) => ({ ...margin, between: [low, high] as const });
   const free = { ...margin, target: null, meetsTarget: null };
   it.each([
     ["target reached", { status: "trusted", margin: { ...margin, meetsTarget: true } }, 0],
@@ -117,7 +143,15 @@ describe("the exit status", () => {
     ["no target, negative radius", { status: "trusted", margin: { ...free, value: -0.1 } }, 1],
     ["no target, small multiplier", { status: "trusted", margin: { ...free, measure: "multiplier" } }, 1],
     ["untrusted, target reached", { status: "untrusted", margin: { ...margin, meetsTarget: true } }, 3],
-    ["an open bracket", { status: "bracket-open", margin }, 3],
+    ["a bracket open around the target", { status: "bracket-open", margin: open(0.5, 1.5) }, 3],
+    ["a bracket open above the target", { status: "bracket-open", margin: open(1, null) }, 0],
+    ["a bracket open below the target", { status: "bracket-open", margin: open(null, 0.9) }, 1],
+    ["a bracket without ends", { status: "bracket-open", margin: open(null, null) }, 3],
+    [
+      "a multiplier's bracket around 1",
+      { status: "bracket-open", margin: { ...open(0.5, 2), target: null, measure: "multiplier" } },
+      3,
+    ],
     ["infeasible", { status: "infeasible", margin: { ...margin, meetsTarget: true } }, 1],
     ["a sound model", { status: "trusted" }, 0],
     ["an unsound model", { status: "unsound" }, 1],
@@ -132,7 +166,7 @@ describe("the results folder", () => {
     command: "margin",
     problem: "machines/brake.json",
     version: "1",
-    design: [{ name: "layer", value: 1, at: "--set" }],
+    design: [{ name: "layer", value: 1, at: "--set", typed: true }],
     at: [],
     seed: null,
   };
@@ -143,7 +177,10 @@ describe("the results folder", () => {
   });
 
   it("is the same for the same question however it was asked, and another for another", () => {
-    const same = { ...request, design: [{ name: "layer", value: 1, at: "old.json /design/layer" }] };
+    const same = {
+      ...request,
+      design: [{ name: "layer", value: 1, at: "old.json /design/layer", typed: false }],
+    };
     expect(resultsFolder(same, inputs)).toBe(resultsFolder(request, inputs));
     const others = [
       resultsFolder({ ...request, design: [] }, inputs),
