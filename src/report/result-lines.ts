@@ -87,7 +87,9 @@ export function evidenceText({ status, witness, audit }: MarginCommandResult): s
   return [
     ...(status === "trusted" ? ["trusted"] : []),
     witness === null ? "no witness" : `witness residual ${numberText(witness.residual, 2)}`,
-    `audit off by ${numberText(audit.worst, 2)} at worst in ${counted(audit.evaluations, "full-model evaluation")}`,
+    audit.evaluations === 0
+      ? "no audit yet"
+      : `audit off by ${numberText(audit.worst, 2)} at worst in ${counted(audit.evaluations, "full-model evaluation")}`,
     ...(lowest === undefined
       ? []
       : [`${counted(others, "other operating point")}, the lowest at ${numberText(lowest)}`]),

@@ -110,6 +110,17 @@ describe("the summary of a margin", () => {
     expect(text).toContain("its own energy as it dies out 90 %");
   });
 
+  it("says of a multiplier below one that the machine as it stands is beyond it", () => {
+    const margin = { ...marginCase.margin, measure: "multiplier", kind: null } as const;
+    expect(marginText({ ...marginCase, margin })).toContain("stable only up to 0.8341 times");
+    expect(marginText({ ...marginCase, margin: { ...margin, value: 2 } })).toContain("stable up to 2 times");
+  });
+
+  it("says so when nothing was audited yet", () => {
+    const audit = { ...marginCase.audit, evaluations: 0, worst: 0 };
+    expect(marginText({ ...marginCase, audit })).toContain("no audit yet");
+  });
+
   it("says so when nothing was found to break", () => {
     const margin = {
       ...marginCase.margin,
