@@ -81,20 +81,25 @@ export function limitText({ used, limit, unit }: LimitResult): string {
   return `${numberText(used)} of ${withUnit(numberText(limit), unit)}${over}`;
 }
 
-export function evidenceText({ status, witness, audit }: MarginCommandResult): string {
-  const others = audit.envelope.length;
-  const lowest = audit.envelope[0]?.value;
+export function evidenceText(result: MarginCommandResult): string {
+  const { status, witness, audit } = result;
   return [
     ...(status === "trusted" ? ["trusted"] : []),
     witness === null ? "no witness" : `witness residual ${numberText(witness.residual, 2)}`,
     audit.evaluations === 0
       ? "no audit yet"
       : `audit off by ${numberText(audit.worst, 2)} at worst in ${counted(audit.evaluations, "full-model evaluation")}`,
-    ...(lowest === undefined
-      ? []
-      : [`${counted(others, "other operating point")}, the lowest at ${numberText(lowest)}`]),
+    ...envelopeText(result),
     ...(audit.levelSetClean ? [] : ["the level-set test found a peak that was missed"]),
   ].join(", ");
+}
+
+/** What the full model said at other operating points. */
+function envelopeText({ audit: { envelope }, margin }: MarginCommandResult): string[] {
+  if (envelope.length === 0) return [];
+  const lowest = { ...margin, value: envelope[0].value };
+  const said = isGrowth(lowest) ? "unstable too" : `at ${numberText(lowest.value)}`;
+  return [`${counted(envelope.length, "other operating point")}, the lowest ${said}`];
 }
 
 export function effortText(effort: EffortResult): string {

@@ -98,6 +98,9 @@ describe("the summary of a margin", () => {
     const text = marginText({ ...marginCase, margin, unperturbed, balance });
     expect(text).toContain("UNSTABLE: grows at 3.21 1/s near 391.2 Hz as it stands,\n");
     expect(text).toContain("no distance");
+    expect(text).toContain("at 1.3");
+    const audit = { ...marginCase.audit, envelope: [{ at: {}, value: -1e-5 }] };
+    expect(marginText({ ...marginCase, margin, audit })).toContain("unstable too");
     expect(text).toContain("background 56 %, 44 % are left and make it grow");
     expect(text).not.toMatch(/between|next/);
   });
