@@ -50,7 +50,7 @@ function meaningText(margin: MarginResult): string {
   if (measure === "radius")
     return `withstands model errors up to ${numberText(value)} times the declared one`;
   if (measure === "multiplier") {
-    return `stable ${value < 1 ? "only " : ""}up to ${numberText(value)} times what is multiplied (friction, flow)`;
+    return `stable ${value < 1 ? "only " : ""}up to ${numberText(value)} times the terms it scales`;
   }
   return "";
 }

@@ -8,8 +8,10 @@ import { newFolder, run, start } from "./command-line.js";
 const problem = (name: string) => resolve("problems", name, `${name}.json`);
 
 async function answer(command: "margin" | "tune", name: string) {
-  const { status, stdout } = await run([command, problem(name), "--json", "--quiet"], newFolder());
-  return { status, result: JSON.parse(stdout) };
+  const folder = newFolder();
+  const { status, stdout } = await run([command, problem(name), "--json", "--quiet", "--out", "r"], folder);
+  const summary = readFileSync(join(folder, "r", "summary.txt"), "utf8");
+  return { status, result: JSON.parse(stdout), summary };
 }
 
 describe("margin of", () => {
@@ -33,7 +35,7 @@ describe("margin of", () => {
   });
 
   it("the ring brake's start design is growth near 391 Hz at the highest friction", async () => {
-    const { status, result } = await answer("margin", "ring-brake");
+    const { status, result, summary } = await answer("margin", "ring-brake");
     expect(status).toBe(1);
     expect(result).toMatchObject({ status: "trusted", margin: { loss: "flutter", meetsTarget: false } });
     expect(result.model.dofs).toBe(1002);
@@ -50,6 +52,9 @@ describe("margin of", () => {
     );
     expect(power.get("rub")).toBeCloseTo(-1, 8);
     expect(power.get("stored energy")).toBeGreaterThan(0.3);
+    // The README quotes the summary; its evidence and effort may move in the last digits.
+    const [quoted] = summary.split("\n\n  model");
+    expect(readFileSync("README.md", "utf8")).toContain(quoted);
   });
 });
 
