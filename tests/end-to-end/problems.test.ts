@@ -1,6 +1,6 @@
 /** The problems that come with the repository, through the built command line. */
 
-import { readFileSync } from "node:fs";
+import { readdirSync, readFileSync } from "node:fs";
 import { join, resolve } from "node:path";
 import { describe, expect, it } from "vitest";
 import { newFolder, run, start } from "./command-line.js";
@@ -13,6 +13,21 @@ async function answer(command: "margin" | "tune", name: string) {
   const summary = readFileSync(join(folder, "r", "summary.txt"), "utf8");
   return { status, result: JSON.parse(stdout), summary };
 }
+
+it.each(["ring-brake", "friction-oscillator", "cross-coupled-rotor"])(
+  "%s is what `sample` writes",
+  async (name) => {
+    const folder = newFolder();
+    expect((await run(["sample", name, "--out", "."], folder)).status).toBe(0);
+    const kept = resolve("problems", name);
+    expect(readdirSync(folder).sort()).toEqual(readdirSync(kept).sort());
+    for (const file of readdirSync(kept)) {
+      expect(readFileSync(join(folder, file), "utf8") === readFileSync(join(kept, file), "utf8"), file).toBe(
+        true,
+      );
+    }
+  },
+);
 
 describe("margin of", () => {
   it("the friction oscillator is the closed form in its notes, 64/75", async () => {

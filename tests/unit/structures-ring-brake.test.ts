@@ -48,6 +48,13 @@ it.each([...samples.keys()])("the sample %s is a sound problem file", async (nam
   expect(problem.notes).not.toBeNull();
 });
 
+it("the ring brake says that the viscous equivalent of its layers' loss holds up to its own frequency", async () => {
+  const { constants, terms } = await written(ringBrake(300));
+  const limited = terms.filter(({ validToHz }) => validToHz !== null);
+  expect(limited.map(({ name }) => name)).toEqual(["loss of layerA", "loss of layerB", "loss of layerC"]);
+  expect(limited.every(({ validToHz }) => validToHz === constants.get("lossHz"))).toBe(true);
+});
+
 it("the ring brake has the dofs asked for and at most a tenth more", () => {
   for (const dofs of [300, 301, 500, 1000, 1234, 3000, 10_000, 30_000]) {
     const { mesh } = ringBrakeLayout(dofs);
