@@ -76,7 +76,8 @@ describe("tune", () => {
     const { status, stdout, stderr } = await run(["tune", "problem.json", "--out", "t"], folder);
     expect(status).toBe(0);
     expect(stderr).toContain("building the model");
-    expect(stdout).toMatch(/before +after +target 5 reached/);
+    expect(stdout).toMatch(/margin +[\d.]+, complex stability radius, target 5 reached\n/);
+    expect(stdout).toMatch(/ before +after\n/);
     const result = json(readFileSync(join(folder, "t", "result.json"), "utf8"));
     // More damping is better here, so the limit c ≤ 3 decides; limits are kept to 1e-6 of themselves.
     expect(result.design.c).toBeCloseTo(3, 5);
