@@ -14,7 +14,14 @@ export interface Setting {
   readonly shift: number;
   /** ω_ref [rad/s] that makes a growth dimensionless. */
   readonly omegaRef: number;
+  /** A margin of this size matters; see `sizeOf`. */
+  readonly unit: number;
   readonly peaks: PeakOptions;
+}
+
+/** The size of a margin that tolerances are shares of: its own, but never less than the unit, for it may be zero. */
+export function sizeOf(value: number, { unit }: Pick<Setting, "unit">): number {
+  return Math.max(unit, Math.abs(value));
 }
 
 /** One place where the margin may be decided, as a reduced model sees it. */

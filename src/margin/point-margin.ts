@@ -6,7 +6,7 @@ import { type Audit, auditEigenvalues, auditRadius } from "./audit.js";
 import { bandOf } from "./band.js";
 import { decay } from "./decay.js";
 import { eigenvalueList, judgeStability, type StabilityVerdict, verdictOf } from "./full-stability.js";
-import type { Checked, Measure, Setting } from "./measure.js";
+import { type Checked, type Measure, type Setting, sizeOf } from "./measure.js";
 import { missedPeaks } from "./missed-peaks.js";
 import { multiplier } from "./multiplier.js";
 import { peakDefaults } from "./peaks.js";
@@ -45,7 +45,14 @@ export function settingOf(settings: MarginSettings, adaptive: AdaptiveModel): Se
   const band = bandOf(settings.bandHz);
   const searched = Number.isFinite(band.high) ? band : { low: band.low, high: adaptive.searchedTo };
   const omegaRef = Number.isFinite(searched.high) ? searched.high : adaptive.shift;
-  return { band: searched, shift: adaptive.shift, omegaRef, peaks: peakDefaults };
+  const unit = Math.abs(settings.target ?? 0) || unitOf(settings, omegaRef);
+  return { band: searched, shift: adaptive.shift, omegaRef, unit, peaks: peakDefaults };
+}
+
+/** Without a target: what was declared for a radius or multiplier, a damping ratio of one per cent for a decay. */
+function unitOf({ measure, as }: MarginSettings, omegaRef: number): number {
+  if (measure !== "decay") return 1;
+  return { ratio: 0.01, logDecrement: 0.02 * Math.PI, rate: 0.01 * omegaRef }[as];
 }
 
 /** The states along the multiplier at one point. */
@@ -161,7 +168,7 @@ function assemble(
 ): PointMargin {
   const { decisive, value } = settled;
   const witness = decisive === undefined ? undefined : witnessOf(adaptive.full.pencilAt(states(1)), decisive);
-  const slack = Math.abs(value) * audit.worst + 1e-9 * Math.max(1, Math.abs(value));
+  const slack = Math.abs(value) * audit.worst + 1e-9 * sizeOf(value, setting);
   const low = Number.isFinite(value) ? value - slack : value;
   const omega = decisive?.omega ?? null;
   return {
@@ -192,7 +199,7 @@ function doubtsOf(
   if (missed.length > 0) doubts.push("the level-set test still finds a higher peak");
   if (stability.missed.length > 0)
     doubts.push("the full model has unstable eigenvalues that the reduced one lacks");
-  if (stability.open > 0) doubts.push(`${stability.open} nearly unstable eigenvalues could not be examined`);
+  if (stability.open > 0) doubts.push(`${stability.open} stretches of the axis could not be searched for unstable eigenvalues`);
   if (audit.surprised) doubts.push("the audit met a place worse than the margin reported");
   if (witness !== undefined && !(witness.residual < 1e-8))
     doubts.push("the witness does not make the full model singular");

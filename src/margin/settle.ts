@@ -2,10 +2,10 @@ import type { ModelState } from "../model/parametric-model.js";
 import type { ComplexVector } from "../numerics/dense/matrix.js";
 import type { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { liftBy } from "./lift.js";
-import type { Checked, Critical, Estimate, Measure, Setting } from "./measure.js";
+import { type Checked, type Critical, type Estimate, type Measure, type Setting, sizeOf } from "./measure.js";
 
 export interface SettleOptions {
-  /** Largest accepted gap between reduced and full value, relative to max(1, |value|). Default 1e-9. */
+  /** Largest accepted gap between reduced and full value, relative to the margin's size (`sizeOf`). Default 1e-9. */
   readonly tolerance: number;
   /** Full checks at most. Default 20. */
   readonly maximumChecks: number;
@@ -53,7 +53,7 @@ export function settle(
   for (;;) {
     const estimate = measure.estimate((multiplier) => adaptive.reducedAt(stateAt(multiplier)), setting);
     const next = competitors(estimate, options).find(
-      (critical) => !agreed.some((known) => sameplace(known, critical)),
+      (critical) => !agreed.some((known) => sameplace(known, critical, setting)),
     );
     const done = next === undefined;
     if (done || records.length >= options.maximumChecks) return conclude(done, agreed, estimate, records);
@@ -61,7 +61,9 @@ export function settle(
     const checked = measure.check(fullAt, next, lift, setting);
     records.push({ omega: next.omega, reduced: next.value, full: checked.value, order: adaptive.order });
     const gap = Math.abs(next.value - checked.value);
-    const agrees = checked.converged && gap <= options.tolerance * Math.max(1, Math.abs(checked.value));
+    // A refuted place has the value Infinity, and an infinite gap: it must not pass for agreement on an infinite size.
+    const agrees =
+      checked.converged && Number.isFinite(gap) && gap <= options.tolerance * sizeOf(checked.value, setting);
     if (agrees) agreed.push(checked);
     const before = adaptive.order;
     adaptive.enrich(checked.directions);
@@ -77,9 +79,9 @@ function competitors(estimate: Estimate, options: SettleOptions): readonly Criti
   return criticals.filter((critical, k) => k === 0 || critical.value <= bound);
 }
 
-function sameplace(known: Checked, critical: Critical): boolean {
+function sameplace(known: Checked, critical: Critical, setting: Setting): boolean {
   const near = Math.abs(known.omega - critical.omega) <= 1e-6 * Math.max(known.omega, critical.omega, 1e-9);
-  return near && Math.abs(known.value - critical.value) <= 1e-6 * Math.max(1, Math.abs(known.value));
+  return near && Math.abs(known.value - critical.value) <= 1e-6 * sizeOf(known.value, setting);
 }
 
 function conclude(

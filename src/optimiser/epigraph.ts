@@ -14,8 +14,10 @@ export interface MaximinOptions {
   /** Half width of the box around the start in which is searched, share of the range; 1 is everywhere. */
   readonly reach: number;
   readonly maximumEvaluations: number;
-  /** Accuracy wanted in the smallest piece. */
+  /** Accuracy wanted in the smallest piece, relative to the larger of its size and the unit. */
   readonly tolerance: number;
+  /** Size of a piece that matters. */
+  readonly unit: number;
 }
 
 export interface MaximinResult {
@@ -28,6 +30,9 @@ export interface MaximinResult {
 
 /** Violation of a limit below which a point counts as feasible. */
 export const feasibilityTolerance = 1e-9;
+
+/** Pieces further above the start's smallest, in its scale, are all alike. */
+const ceiling = 4;
 
 /**
  * Epigraph form: maximise τ over (x, τ) subject to piece_j(x) ≥ τ and g(x) ≤ 0, by COBYLA. The plain
@@ -45,29 +50,30 @@ export async function maximiseMinimum(
   const { dimension: n } = problem;
   const memory = new PointMemory(problem);
   const first = memory.at(options.start);
-  const level = Math.min(...first.pieces, 1e6);
-  const scale = Math.max(0.5, Math.abs(level));
+  const lowest = Math.min(...first.pieces);
+  const level = Number.isFinite(lowest) ? lowest : options.unit;
+  // The method sees (piece − level)/scale, so that its trust region has one shape in x and τ.
+  const scale = Math.max(0.5 * options.unit, Math.abs(level));
   // A limit is asked for with a little to spare: the method ends on it to its own accuracy only.
   const spare = 1e-7;
   const optimiser = new nlopt.Optimize(nlopt.Algorithm.LN_COBYLA, n + 1);
   optimiser.setMaxObjective((z: number[]) => z[n], 0.1 * options.tolerance);
   for (let j = 0; j < problem.pieces; j++) {
-    const ceiling = level + 4 * scale;
     optimiser.addInequalityConstraint(
-      (z: number[]) => z[n] - Math.min(memory.at(z).pieces[j], ceiling),
+      (z: number[]) => z[n] - Math.min((memory.at(z).pieces[j] - level) / scale, ceiling),
       1e-8,
     );
   }
   for (let l = 0; l < problem.limits; l++) {
     optimiser.addInequalityConstraint((z: number[]) => memory.at(z).limits[l] + spare, 1e-8);
   }
-  optimiser.setLowerBounds([...options.start.map((x) => Math.max(0, x - options.reach)), level - 2 * scale]);
-  optimiser.setUpperBounds([...options.start.map((x) => Math.min(1, x + options.reach)), level + 2 * scale]);
+  optimiser.setLowerBounds([...options.start.map((x) => Math.max(0, x - options.reach)), -2]);
+  optimiser.setUpperBounds([...options.start.map((x) => Math.min(1, x + options.reach)), 2]);
   // COBYLA asks for each constraint by itself; the memory answers all of a point at once.
   optimiser.setMaxeval(options.maximumEvaluations);
   let status: MaximinResult["status"] = "converged";
   try {
-    optimiser.optimize([...options.start, level]);
+    optimiser.optimize([...options.start, 0]);
     if (memory.evaluations >= options.maximumEvaluations) status = "evaluations-exhausted";
   } catch (error) {
     // nlopt-js reports its own failures (round-off limits among them) as bare numbers.

@@ -188,7 +188,7 @@ export interface ProblemFile {
      */
     seed?: number;
     /**
-     * Agreement wanted between reduced and full margin, relative to max(1, margin); default 0.001.
+     * Agreement wanted between reduced and full margin, relative to the larger of margin and target (without a target 1, or a damping ratio of 0.01); default 0.001.
      */
     tolerance?: number;
   };

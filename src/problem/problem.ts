@@ -101,7 +101,7 @@ export interface MarginSettings {
 
 export interface TuneSettings {
   readonly seed: number;
-  /** Agreement wanted between reduced and full margin, relative to max(1, margin). */
+  /** Agreement wanted between reduced and full margin, relative to the larger of margin and target (without one, see `settingOf`). */
   readonly tolerance: number;
 }
 

@@ -1,4 +1,4 @@
-import type { Critical } from "../margin/measure.js";
+import { type Critical, sizeOf } from "../margin/measure.js";
 import { type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
 import type { Session } from "./session.js";
 
@@ -13,9 +13,9 @@ export interface Candidate {
 export interface ClimbOptions {
   /** Half width of the box searched around the start, share of each range. */
   readonly reach: number;
-  /** Designs evaluated in one solve of the epigraph problem. */
-  readonly evaluations: number;
-  /** Accuracy of the margin. */
+  /** Designs evaluated in one solve of the epigraph problem, as a share of those that a first ascent gets. */
+  readonly effort: number;
+  /** Accuracy of the margin, relative to its size (`sizeOf`). */
   readonly tolerance: number;
   /** How often the set of active operating points is exchanged at most. */
   readonly exchanges: number;
@@ -53,12 +53,12 @@ export async function climb(
     x = await ascend(session, x, points, {
       ...options,
       reach: share * options.reach,
-      evaluations: Math.ceil(share * options.evaluations),
+      effort: share * options.effort,
     });
     const design = session.designs.valuesOf(x);
     const known = Math.min(...points.map((at) => session.estimate(design, at).value));
     const worst = session.worstPoints(design, points, "coarse")[0];
-    const slack = options.tolerance * Math.max(1, Math.abs(known));
+    const slack = options.tolerance * sizeOf(known, session.setting);
     if (worst.value >= known - slack || exchange === options.exchanges) {
       return { x, value: Math.min(known, worst.value), active: points };
     }
@@ -115,10 +115,20 @@ async function ascend(
   const result = await maximiseMinimum(problem, {
     start: free.map((i) => start[i]),
     reach: options.reach,
-    maximumEvaluations: options.evaluations,
+    maximumEvaluations: Math.ceil(options.effort * evaluationsOf(free.length, options.tolerance)),
     tolerance: options.tolerance,
+    unit: session.setting.unit,
   });
   return designs.pullBack(spread(result.x), start);
+}
+
+/**
+ * Designs a first ascent may evaluate. The linear models of COBYLA take a simplex of n + 1 points and some twenty
+ * times as many in all to come near the optimum; each further decade of accuracy costs a few simplices more.
+ */
+function evaluationsOf(dimension: number, tolerance: number): number {
+  const decades = Math.max(0, Math.log10(1e-3 / tolerance));
+  return (dimension + 1) * (18 + 6 * decades);
 }
 
 function slotFrequencies(criticals: readonly Critical[]): number[] {

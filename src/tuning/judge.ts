@@ -1,3 +1,4 @@
+import { sizeOf } from "../margin/measure.js";
 import { marginAt, type PointMargin, provisionalMargin, statesAt } from "../margin/point-margin.js";
 import { type Settled, settle, settleDefaults } from "../margin/settle.js";
 import type { Resolution } from "./operating-space.js";
@@ -44,7 +45,7 @@ export function judge(
     if (fixed !== undefined) return { at, point, envelope: [], doubts: point.doubts };
     progress({ stage: "checking the envelope", done: round, total: null });
     checks = checkEnvelope(session, design, at);
-    const slack = 1e-6 * Math.max(1, Math.abs(point.value));
+    const slack = 1e-6 * sizeOf(point.value, setting);
     const worse = checks.some((check) => check.value < point.value - slack);
     if (!worse || round === mostRounds) {
       const doubts = worse
@@ -109,7 +110,7 @@ export function settledWorst(
         : session.worstPoints(design, [...known, ...visited], "local");
     const found = low.find(({ at }) => visited.every((other) => !samePoint(session, other, at, 1e-9)));
     if (found === undefined) break;
-    const slack = tolerance * Math.max(1, Math.abs(found.value));
+    const slack = tolerance * sizeOf(found.value, session.setting);
     if (best !== undefined && found.value >= best.value - slack) break;
     const { value } = settleAt(session, design, found.at, tolerance);
     visited.push(found.at);

@@ -28,7 +28,7 @@ export async function roundToSteps(
     .sort((a, b) => b.value - a.value);
   let best: Incumbent | undefined;
   for (const { x } of ranked.slice(0, polished)) {
-    const options = { reach: 0.3, evaluations: 60, tolerance, exchanges: 2, frozen };
+    const options = { reach: 0.3, effort: 0.55, tolerance, exchanges: 2, frozen };
     const climbed = await climb(session, x, incumbent.active, options);
     const worst = settledWorst(session, designs.valuesOf(climbed.x), climbed.active, "coarse", tolerance);
     if (best === undefined || worst.value > best.worst.value)

@@ -1,3 +1,4 @@
+import { sizeOf } from "../margin/measure.js";
 import { type Climbed, type ClimbOptions, climb } from "./climb.js";
 import { type EnvelopeCheck, settledWorst } from "./judge.js";
 import type { ReportProgress, Session } from "./session.js";
@@ -32,7 +33,7 @@ export type ReportBest = (design: ReadonlyMap<string, number>, worst: EnvelopeCh
 
 const laterClimb: Omit<ClimbOptions, "tolerance"> = {
   reach: 0.15,
-  evaluations: 70,
+  effort: 0.65,
   exchanges: 3,
   frozen: new Set(),
 };
@@ -69,9 +70,10 @@ export async function confirmRounds(
   const history: RoundRecord[] = [];
   let pool = climbed;
   let best: Incumbent | undefined;
+  let { reach } = laterClimb;
   for (let round = 0; round < rounds; round++) {
     const top = pool[0];
-    const slack = tolerance * Math.max(1, Math.abs(top.value));
+    const slack = tolerance * sizeOf(top.value, session.setting);
     if (best !== undefined && top.value <= best.worst.value + slack) return { best, history, agreed: true };
     progress({ stage: "confirming on the full model", done: round, total: rounds });
     const design = designs.valuesOf(top.x);
@@ -93,10 +95,16 @@ export async function confirmRounds(
     }
     const others = pool.slice(1, 2).map((candidate) => candidate.x);
     const next = [best.x, ...(top.x === best.x ? [] : [top.x]), ...others];
-    pool = await climbAll(session, next, active, { ...laterClimb, tolerance }, progress);
+    pool = await climbAll(session, next, active, { ...laterClimb, reach, tolerance }, progress);
+    // An ascent that ends on the edge of its box had further to go.
+    if (next.some((x) => distance(x, pool[0].x) > 0.9 * reach)) reach = Math.min(1, 2 * reach);
   }
   if (best === undefined) throw new Error("tuning made no round");
   return { best, history, agreed: false };
+}
+
+function distance(a: readonly number[], b: readonly number[]): number {
+  return Math.max(...a.map((value, i) => Math.abs(value - b[i])));
 }
 
 function withPoint(

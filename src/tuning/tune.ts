@@ -8,7 +8,7 @@ import type { ReportProgress, Session } from "./session.js";
 
 export interface TuneOptions {
   readonly seed: number;
-  /** Agreement wanted between reduced and full margin in a round, relative to max(1, margin). */
+  /** Agreement wanted between reduced and full margin in a round, relative to the margin's size (`sizeOf`). */
   readonly tolerance: number;
   /** Designs screened before the first ascents. */
   readonly screened: number;
@@ -18,7 +18,7 @@ export interface TuneOptions {
   readonly rounds: number;
 }
 
-export const tuneDefaults: Omit<TuneOptions, "seed" | "tolerance"> = { screened: 160, starts: 6, rounds: 8 };
+export const tuneDefaults: Omit<TuneOptions, "seed" | "tolerance"> = { screened: 160, starts: 6, rounds: 24 };
 
 /** What the search found; its evidence is gathered afterwards. */
 export interface Tuned {
@@ -33,7 +33,7 @@ export interface Tuned {
 
 const firstClimb: Omit<ClimbOptions, "tolerance"> = {
   reach: 1,
-  evaluations: 110,
+  effort: 1,
   exchanges: 3,
   frozen: new Set(),
 };
@@ -79,7 +79,10 @@ export async function tune(
     progress,
     reportBest,
   );
-  if (!agreed) doubts.push("reduced and full margin did not come to agree at the optimum");
+  if (!agreed)
+    doubts.push(
+      "the search still gained, or reduced and full margin disagreed, when its rounds were used up",
+    );
   if (designs.isFeasible(designs.start) && before.value > best.worst.value) {
     best = { x: designs.start, worst: before, active: [before.at] };
   }

@@ -164,6 +164,7 @@ export function settingFor(low: number, high: number, shift: number): Setting {
     band: { low, high },
     shift,
     omegaRef: Number.isFinite(high) ? high : shift,
+    unit: 1,
     peaks: peakDefaults,
   };
 }
