@@ -199,7 +199,8 @@ function doubtsOf(
   if (missed.length > 0) doubts.push("the level-set test still finds a higher peak");
   if (stability.missed.length > 0)
     doubts.push("the full model has unstable eigenvalues that the reduced one lacks");
-  if (stability.open > 0) doubts.push(`${stability.open} stretches of the axis could not be searched for unstable eigenvalues`);
+  if (stability.open > 0)
+    doubts.push(`${stability.open} stretches of the axis could not be searched for unstable eigenvalues`);
   if (audit.surprised) doubts.push("the audit met a place worse than the margin reported");
   if (witness !== undefined && !(witness.residual < 1e-8))
     doubts.push("the witness does not make the full model singular");
