@@ -25,7 +25,7 @@ export interface StabilityVerdict {
   readonly leastDamped: readonly Eigenvalue[];
   /** Full-model eigenvalues that are unstable though the reduced model had not seen them so. */
   readonly missed: readonly NearbyEigenvalue[];
-  /** Suspects (unstable or ζ < 1e-3) confirmed or refuted by the full model, and those left open. */
+  /** Suspects (unstable or ζ < 1e-3) confirmed or refuted by the full model, and those (or a part of the axis) left open. */
   readonly examined: number;
   readonly open: number;
 }
@@ -33,12 +33,12 @@ export interface StabilityVerdict {
 const suspicious = 1e-3;
 /** Unstable modes just outside the band are common: they are looked for up to here. */
 export const outsideReach = 1.3;
-const mostShifts = 60;
+const mostShifts = 120;
 
 /**
  * Confirms or refutes every reduced eigenvalue that is unstable or nearly so (ζ < 1e-3) by
- * shift-and-invert Arnoldi on the full model. Neighbours come along, so that what the reduced model
- * missed near a suspect is found too.
+ * shift-and-invert Arnoldi on the full model, then covers the rest of the axis in the same way: what the reduced
+ * model missed is found too.
  */
 export function judgeStability(
   adaptive: AdaptiveModel,
@@ -50,13 +50,14 @@ export function judgeStability(
   const all = eigenvalueList(reduced).filter(({ im }) => im <= reach);
   if (adaptive.exact) return verdictOf(all, [], setting, all.filter(isSuspect(setting)).length, 0);
   const suspects = all.filter(isSuspect(setting)).sort((a, b) => a.im - b.im);
-  const { neighbourhoods, open } = coverSuspects(adaptive, state, setting, suspects);
-  const found = distinctEigenvalues(neighbourhoods);
+  const { neighbourhoods, open, walked } = coverSuspects(adaptive, state, setting, suspects, reach);
+  // Discs reach further than the rule says; what lies there is counted by nobody.
+  const found = distinctEigenvalues(neighbourhoods).filter(({ im }) => im <= reach);
   const rest = all.filter((value) => !neighbourhoods.some((area) => covers(area, value)));
   const missed = found.filter(
     (value) => isUnstable(value.re, value.im, setting.shift) && !all.some((known) => close(known, value)),
   );
-  return verdictOf([...found, ...rest], missed, setting, suspects.length, open.length);
+  return verdictOf([...found, ...rest], missed, setting, suspects.length, open.length + (walked ? 0 : 1));
 }
 
 function isSuspect(setting: Setting): (value: Eigenvalue) => boolean {
@@ -69,7 +70,8 @@ function coverSuspects(
   state: ModelState,
   setting: Setting,
   suspects: readonly Eigenvalue[],
-): { neighbourhoods: Neighbourhood[]; open: Eigenvalue[] } {
+  reach: number,
+): { neighbourhoods: Neighbourhood[]; open: Eigenvalue[]; walked: boolean } {
   const pencil = adaptive.full.pencilAt(state);
   const neighbourhoods: Neighbourhood[] = [];
   const open: Eigenvalue[] = [];
@@ -92,7 +94,37 @@ function coverSuspects(
     if (!covered()) examine(suspect.re, suspect.im * (1 + 1e-5) + 1e-6 * setting.shift);
     if (!covered()) open.push(suspect);
   }
-  return { neighbourhoods, open };
+  return { neighbourhoods, open, walked: walkAxis(neighbourhoods, setting, reach, examine) };
+}
+
+/**
+ * Covers the rest of the axis up to `reach` with discs: an unstable eigenvalue that the reduced model knows nothing
+ * of has no suspect beside it. False when the discs ran out.
+ */
+function walkAxis(
+  neighbourhoods: readonly Neighbourhood[],
+  setting: Setting,
+  reach: number,
+  examine: (re: number, im: number) => number,
+): boolean {
+  // Where discs overlap by a tenth, they cover a strip beside the axis too.
+  const topOf = ({ shiftRe, shiftIm, radius }: Neighbourhood) =>
+    shiftIm + Math.sqrt(Math.max(0, (0.9 * radius) ** 2 - shiftRe ** 2));
+  let stride = 0.02 * reach;
+  for (let at = 0; at < reach; ) {
+    const over = neighbourhoods.filter((area) => covers(area, { re: 0, im: at })).map(topOf);
+    const next = over.reduce((high, top) => Math.max(high, top), at);
+    if (next > at) {
+      at = next;
+      continue;
+    }
+    if (neighbourhoods.length >= mostShifts) return false;
+    const centre = Math.max(at + 0.8 * stride, 1e-3 * setting.shift);
+    const radius = examine(0, centre);
+    // Too far ahead: a shorter stride closes the gap.
+    stride = centre - 0.9 * radius > at ? 0.5 * Math.min(stride, radius) : radius;
+  }
+  return true;
 }
 
 /** Two arrays as a list. */

@@ -1,6 +1,11 @@
 import { NumericalError } from "../../errors.js";
 
 const sweepsPerValue = 60;
+/**
+ * After so many sweeps a coupling of rounding size is dropped: among the null values of a matrix of low rank it may
+ * never fall below eps of its neighbours.
+ */
+const patience = 20;
 
 /**
  * Eigenvalues of a real symmetric tridiagonal matrix by implicit QL with
@@ -24,10 +29,11 @@ export function tridiagonalQl(
 ): void {
   const cosine = new Float64Array(rows === null ? 0 : n);
   const sine = new Float64Array(rows === null ? 0 : n);
+  const largest = d.subarray(0, n).reduce((most, value) => Math.max(most, Math.abs(value)), 0);
   for (let l = 0; l < n; l++) {
     for (let sweep = 0; ; sweep++) {
-      let m = l;
-      while (m < n - 1 && Math.abs(e[m]) > Number.EPSILON * (Math.abs(d[m]) + Math.abs(d[m + 1]))) m++;
+      const floor = sweep < patience ? 0 : largest;
+      const m = endOfBlock(d, e, l, n, floor);
       if (m === l) break;
       if (sweep === sweepsPerValue) {
         throw new NumericalError(
@@ -40,6 +46,16 @@ export function tridiagonalQl(
       if (rows !== null) rotateRows(rows, n, count, top, m, cosine, sine);
     }
   }
+}
+
+// The first index from l on whose coupling to the next is negligible.
+function endOfBlock(d: Float64Array, e: Float64Array, l: number, n: number, floor: number): number {
+  let m = l;
+  while (m < n - 1) {
+    if (Math.abs(e[m]) <= Number.EPSILON * Math.max(floor, Math.abs(d[m]) + Math.abs(d[m + 1]))) break;
+    m++;
+  }
+  return m;
 }
 
 // One sweep from m up to l; returns the index where it ended (above l after an exact split).
