@@ -165,7 +165,6 @@ export function settingFor(low: number, high: number, shift: number): Setting {
     shift,
     omegaRef: Number.isFinite(high) ? high : shift,
     unit: 1,
-    unit: 1,
     peaks: peakDefaults,
   };
 }
