@@ -7,7 +7,15 @@ import { fromTriplets, type SparseMatrix } from "../../src/numerics/sparse/spars
 import { Basis } from "../../src/reduction/basis.js";
 import { truncateModes } from "../../src/reduction/modal-truncation.js";
 import { projectChannel, projectSquare } from "../../src/reduction/projection.js";
-import { companionEigenvalues, definite, denseOf, diagonal, pencilOf, randomRows, tripletsOf } from "./model-cases.js";
+import {
+  companionEigenvalues,
+  definite,
+  denseOf,
+  diagonal,
+  pencilOf,
+  randomRows,
+  tripletsOf,
+} from "./model-cases.js";
 
 function sparseOf(rows: readonly (readonly number[])[], cols: number = rows.length): SparseMatrix {
   const { row, col, value } = tripletsOf(rows, cols);
@@ -41,7 +49,9 @@ describe("a basis", () => {
   it("drops what is not new, zero, or not finite", () => {
     const basis = new Basis(sparseOf(diagonal([1, 4, 9])));
     const unit = Float64Array.of(1, 0, 0);
-    expect(basis.append([unit, unit, Float64Array.of(0, 0, 0), Float64Array.of(Number.NaN, 0, 0)], 1e-10)).toBe(1);
+    expect(
+      basis.append([unit, unit, Float64Array.of(0, 0, 0), Float64Array.of(Number.NaN, 0, 0)], 1e-10),
+    ).toBe(1);
     // A thousandth of the energy norm is new: kept at 1e-4, dropped at 1e-2.
     const nearly = Float64Array.of(1, 0.0005, 0);
     expect(basis.append([nearly], 1e-2)).toBe(0);
@@ -112,7 +122,10 @@ describe("the second level of the reduced model", () => {
       .map(({ im }) => im)
       .sort((a, b) => a - b);
     expect(kept.order).toBe(undamped.filter((omega) => omega <= 3).length);
-    const own = companionEigenvalues({ ...kept, velocityMatrix: { ...kept.massMatrix, values: new Float64Array(kept.order ** 2) } })
+    const own = companionEigenvalues({
+      ...kept,
+      velocityMatrix: { ...kept.massMatrix, values: new Float64Array(kept.order ** 2) },
+    })
       .filter(({ im }) => im > 0)
       .map(({ im }) => im)
       .sort((a, b) => a - b);
@@ -134,7 +147,9 @@ describe("the second level of the reduced model", () => {
   });
 
   it("returns the model as it is where K + σM is not positive definite or nothing lies below", () => {
-    expect(truncateModes(pencilOf({ mass: diagonal([0, 1]), stiffness: diagonal([-1, 1]) }), 2).order).toBe(2);
+    expect(truncateModes(pencilOf({ mass: diagonal([0, 1]), stiffness: diagonal([-1, 1]) }), 2).order).toBe(
+      2,
+    );
     const stiff = pencilOf({ mass: diagonal([1, 1]), stiffness: diagonal([100, 200]) });
     expect(truncateModes(stiff, 1)).toBe(stiff);
   });
