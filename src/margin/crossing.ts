@@ -41,7 +41,8 @@ export function refineCrossing(
   const without = pencilAt(0);
   const unit = pencilAt(1);
   let pencil = pencilAt(alphaGuess);
-  const factor = pencil.factor(0, omegaGuess);
+  // A guess that is right to the last bit would make the factored matrix singular.
+  const factor = pencilAt(alphaGuess * (1 + 1e-7)).factor(0, omegaGuess);
   const x = copyOf(rightGuess);
   const y = copyOf(leftGuess);
   factor.solveInPlace(asColumn(x));
@@ -54,7 +55,8 @@ export function refineCrossing(
     pencil = pencilAt(alpha);
     const r = applyPencil(pencil, 0, omega, x);
     const previous = residual;
-    residual = norm2(r) / pencilNorm(pencil, 0, omega);
+    // With one dof P itself vanishes at the crossing; the model without feeding does not.
+    residual = norm2(r) / Math.max(pencilNorm(pencil, 0, omega), pencilNorm(without, 0, omega));
     if (residual < 1e-14 || (residual > 0.5 * previous && residual < good)) break;
     factor.solveInPlace(asColumn(r));
     addScaledInto(x, -1, 0, r);

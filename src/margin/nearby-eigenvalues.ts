@@ -72,7 +72,8 @@ export function nearbyEigenvalues(
     const right = ritzVector(space, theta.re[j], theta.im[j]);
     const residual = norm2(applyPencil(pencil, re, im, right)) / pencilNorm(pencil, re, im);
     if (residual > converged) {
-      radius = 1 / Math.sqrt(size2);
+      // What this Ritz value stands for may lie nearer than it does, all the more where nothing has converged yet.
+      radius = (eigenvalues.length === 0 ? 0.5 : 0.9) / Math.sqrt(size2);
       break;
     }
     eigenvalues.push({ re, im, right, residual });
