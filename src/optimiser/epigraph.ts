@@ -75,9 +75,8 @@ export async function maximiseMinimum(
   try {
     optimiser.optimize([...options.start, 0]);
     if (memory.evaluations >= options.maximumEvaluations) status = "evaluations-exhausted";
-  } catch (error) {
+  } catch {
     // nlopt-js reports its own failures (round-off limits among them) as bare numbers.
-    if (error instanceof Error && memory.failure !== undefined) throw memory.failure;
     status = "failed";
   } finally {
     nlopt.GC.flush();
@@ -105,15 +104,18 @@ class PointMemory {
 
   at(z: readonly number[]) {
     const x = z.slice(0, this.#problem.dimension).map((value) => Math.min(1, Math.max(0, value)));
+    if (this.failure !== undefined) return this.#last;
     if (this.evaluations > 0 && x.every((value, i) => value === this.#x[i])) return this.#last;
-    this.#x = x;
-    this.evaluations++;
     try {
       this.#last = this.#problem.evaluate(x);
     } catch (error) {
-      this.failure ??= error;
-      throw error;
+      // Thrown through the foreign code it would leave that in ruins, and its own error would hide this one.
+      if (this.evaluations === 0) throw error;
+      this.failure = error;
+      return this.#last;
     }
+    this.#x = x;
+    this.evaluations++;
     const value = Math.min(...this.#last.pieces);
     const feasible = this.#last.limits.every((g) => g <= feasibilityTolerance);
     if ((feasible && value > this.bestValue) || this.bestX.length === 0) {
