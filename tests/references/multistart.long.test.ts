@@ -14,7 +14,7 @@ import { ringBrakeProblem } from "./ring-brake-problem.js";
 /** Designs judged; MULTISTART=20 for a trial. */
 const designs = Number(process.env["MULTISTART"] ?? 500);
 const context = { version: "test", progress: () => {}, snapshot: () => {} };
-const loose: SettleOptions = { ...settleDefaults, tolerance: 1e-6 };
+const loose: SettleOptions = { ...settleDefaults, tolerance: 1e-6, competing: 1 };
 
 /**
  * One design by its own full-model margins. Its own reduced model is started at its own nominal state, so nothing
@@ -52,11 +52,10 @@ class OwnJudge {
 
   /**
    * Smallest margin over corners, mid-points and a local search from the lowest of them. A design that falls
-   * below `bar` anywhere is given up: it cannot be better.
+   * below `bar` anywhere is given up with that value: it cannot be better. High friction, where most do, comes first.
    */
   worst(bar: number): number {
-    const levels = [0, 0.5, 1];
-    const points = levels.flatMap((a) => levels.map((b) => [a, b]));
+    const points = [1, 0.5, 0].flatMap((friction) => [1, 0, 0.5].map((pressure) => [friction, pressure]));
     let lowest = { x: points[0]!, value: Number.POSITIVE_INFINITY };
     for (const x of points) {
       const value = this.valueAt(x);
@@ -94,9 +93,7 @@ it(`no one of ${designs} designs, each judged by its own full-model margins, bea
   const judged: { x: readonly number[]; value: number }[] = [];
   const judge = (x: readonly number[]) => {
     expect(space.isFeasible(x)).toBe(true);
-    // Far below the optimum the exact value is of no interest, but the best random ones are wanted as starts.
-    const bar = 0.7 * tuned;
-    judged.push({ x, value: new OwnJudge(problem, full, session, space.valuesOf(x)).worst(bar) });
+    judged.push({ x, value: new OwnJudge(problem, full, session, space.valuesOf(x)).worst(tuned) });
   };
   const around = (x: readonly number[], reach: number) => space.pullBack(nudged(x, reach, random), anchor);
   while (judged.length < 0.6 * designs) judge(space.randomFilling(random, anchor, judged.length % 2 === 0));
