@@ -6,23 +6,23 @@
  */
 
 export { ExpectedError, type Fault, InputError, NumericalError } from "./errors.js";
-export {
-  type Formula,
-  type InputFile,
-  type Limit,
-  type MarginSettings,
-  type NamedMatrix,
-  type OperatingParameter,
-  type Perturbation,
-  type Problem,
-  readProblem,
-  type Term,
-  type TermGroup,
-  type Triplets,
-  type TuneSettings,
-  type Variable,
+export type {
+  Formula,
+  InputFile,
+  Limit,
+  MarginSettings,
+  NamedMatrix,
+  OperatingParameter,
+  Perturbation,
+  Problem,
+  Term,
+  TermGroup,
+  Triplets,
+  TuneSettings,
+  Variable,
 } from "./problem/problem.js";
 export type { ProblemFile } from "./problem/problem-file.js";
+export { readProblem } from "./problem/read-problem.js";
 export { checkText } from "./report/check-text.js";
 export { marginText } from "./report/margin-text.js";
 export { tuneText } from "./report/tune-text.js";

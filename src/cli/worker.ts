@@ -2,7 +2,8 @@
 
 import { parentPort, workerData } from "node:worker_threads";
 import { type Fault, InputError, invariant } from "../errors.js";
-import { type Problem, readProblem } from "../problem/problem.js";
+import type { Problem } from "../problem/problem.js";
+import { readProblem } from "../problem/read-problem.js";
 import { checkProblem } from "../tuning/check-problem.js";
 import { type CommandContext, computeMargin, tuneProblem } from "../tuning/commands.js";
 import { failureOf } from "./failure.js";

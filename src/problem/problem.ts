@@ -3,8 +3,6 @@
  * built from. Dofs and indices count from 0 here, from 1 in the files.
  */
 
-export { readProblem } from "./read-problem.js";
-
 /** A sparse matrix by entries; duplicates are added by whoever assembles it. Symmetric files stand expanded. */
 export interface Triplets {
   readonly rows: number;

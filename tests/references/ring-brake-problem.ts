@@ -3,7 +3,8 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import type { SparseMatrix } from "../../src/numerics/sparse/sparse-matrix.js";
 import { writeMatrixMarket } from "../../src/problem/matrix-market-writer.js";
-import { type Problem, readProblem, type Triplets } from "../../src/problem/problem.js";
+import type { Problem, Triplets } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 import { ringBrake } from "../../src/structures/ring-brake.js";
 
 /** The ring brake of at least so many dofs, by way of its files. */

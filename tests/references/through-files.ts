@@ -4,8 +4,8 @@ import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { onTestFinished } from "vitest";
-import { readProblem } from "../../src/problem/problem.js";
 import type { Matrix, ProblemFile } from "../../src/problem/problem-file.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 import {
   type CommandContext,
   computeMargin,

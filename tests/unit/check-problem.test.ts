@@ -3,7 +3,7 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, describe, expect, it } from "vitest";
 import { createRandom } from "../../src/numerics/random.js";
-import { readProblem } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 import { type CheckResult, checkProblem } from "../../src/tuning/check-problem.js";
 
 const folder = mkdtempSync(join(tmpdir(), "dampwright-check-"));

@@ -2,7 +2,7 @@ import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, expect, it, vi } from "vitest";
-import { readProblem } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 import { judge } from "../../src/tuning/judge.js";
 import { Session } from "../../src/tuning/session.js";
 

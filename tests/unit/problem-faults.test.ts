@@ -3,7 +3,7 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, describe, expect, it } from "vitest";
 import { type Fault, InputError } from "../../src/errors.js";
-import { readProblem } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 
 const folder = mkdtempSync(join(tmpdir(), "dampwright-faults-"));
 afterAll(() => rmSync(folder, { recursive: true }));

@@ -4,7 +4,8 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { gzipSync } from "node:zlib";
 import { afterAll, describe, expect, it } from "vitest";
-import { readProblem, type Triplets } from "../../src/problem/problem.js";
+import type { Triplets } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 
 const folder = mkdtempSync(join(tmpdir(), "dampwright-read-"));
 afterAll(() => rmSync(folder, { recursive: true }));

@@ -2,7 +2,7 @@ import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, describe, expect, it } from "vitest";
-import { readProblem } from "../../src/problem/problem.js";
+import { readProblem } from "../../src/problem/read-problem.js";
 import { checkProblem } from "../../src/tuning/check-problem.js";
 import { computeMargin } from "../../src/tuning/commands.js";
 
