@@ -18,12 +18,15 @@ export interface Crossing {
   readonly right: ComplexVector;
   readonly left: ComplexVector;
   readonly residual: number;
+  /** The residual is small, and the eigenvalue does enter: undamped modes lie on the axis at every α below their coalescence. */
   readonly converged: boolean;
   /** d Re s / dα [rad/s]: positive when the eigenvalue enters the right half plane. */
   readonly drift: number;
 }
 
 const good = 1e-10;
+/** Least share of the real part in dλ/dα that is more than rounding. */
+const enters = 1e-7;
 
 /**
  * Polishes a crossing on a model by two-sided residual inverse iteration: the scalar complex
@@ -49,9 +52,10 @@ export function refineCrossing(
   factor.solveAdjointInPlace(asColumn(y));
   normaliseInPlace(x);
   normaliseInPlace(y);
-  let [alpha, omega, drift, residual] = [alphaGuess, omegaGuess, 0, Number.POSITIVE_INFINITY];
+  let [alpha, omega, drift, speed] = [alphaGuess, omegaGuess, 0, 0];
+  let residual = Number.POSITIVE_INFINITY;
   for (let step = 0; step < 25; step++) {
-    [alpha, omega, drift] = solveScalar(pencil, without, unit, y, x, alpha, omega);
+    [alpha, omega, drift, speed] = solveScalar(pencil, without, unit, y, x, alpha, omega);
     pencil = pencilAt(alpha);
     const r = applyPencil(pencil, 0, omega, x);
     const previous = residual;
@@ -66,10 +70,18 @@ export function refineCrossing(
     addScaledInto(y, -1, 0, q);
     normaliseInPlace(y);
   }
-  return { alpha, omega, right: x, left: y, residual, converged: residual < good, drift };
+  return {
+    alpha,
+    omega,
+    right: x,
+    left: y,
+    residual,
+    converged: residual < good && drift > enters * speed,
+    drift,
+  };
 }
 
-/** One Newton step for yᴴP(iω; α)x = 0 in (α, ω), ω held at 0 for divergence. */
+/** One Newton step (with dRe λ/dα and |dλ/dα|) for yᴴP(iω; α)x = 0 in (α, ω), ω held at 0 for divergence. */
 function solveScalar(
   pencil: Pencil,
   without: Pencil,
@@ -78,7 +90,7 @@ function solveScalar(
   x: ComplexVector,
   alpha: number,
   omega: number,
-): [number, number, number] {
+): [alpha: number, omega: number, drift: number, speed: number] {
   const f = innerProduct(y, applyPencil(pencil, 0, omega, x));
   const feeding = applyPencil(unit, 0, omega, x);
   addScaledInto(feeding, -1, 0, applyPencil(without, 0, omega, x));
@@ -86,17 +98,19 @@ function solveScalar(
   const slope = innerProduct(y, applyPencilDerivative(pencil, 0, omega, x));
   const slope2 = slope.re * slope.re + slope.im * slope.im;
   const drift = slope2 === 0 ? 0 : -(fed.re * slope.re + fed.im * slope.im) / slope2;
+  const speed = slope2 === 0 ? 0 : Math.hypot(fed.re, fed.im) / Math.sqrt(slope2);
   if (omega === 0) {
     const fed2 = fed.re * fed.re + fed.im * fed.im;
-    return [alpha - (f.re * fed.re + f.im * fed.im) / fed2, 0, drift];
+    return [alpha - (f.re * fed.re + f.im * fed.im) / fed2, 0, drift, speed];
   }
   // ∂f/∂α = fed, ∂f/∂ω = i·slope.
   const [aRe, aIm, bRe, bIm] = [fed.re, fed.im, -slope.im, slope.re];
   const determinant = aRe * bIm - aIm * bRe;
-  if (determinant === 0) return [alpha, omega, drift];
+  if (determinant === 0) return [alpha, omega, drift, speed];
   return [
     alpha - (f.re * bIm - f.im * bRe) / determinant,
     omega - (aRe * f.im - aIm * f.re) / determinant,
     drift,
+    speed,
   ];
 }

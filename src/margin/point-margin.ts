@@ -63,6 +63,9 @@ export function statesAt(model: ParametricModel, values: Values): (multiplier: n
 /** How often the loop starts again after stability, level sets or the audit have found something new. */
 const mostRestarts = 6;
 
+/** Disagreement of the audit, relative to the margin, from which on the loop learns from it. */
+const roughAudit = 1e-3;
+
 /** Settles the margin at one point and gathers its evidence; see `DEVELOPERS.md`, Evidence. */
 export function marginAt(
   adaptive: AdaptiveModel,
@@ -85,7 +88,9 @@ export function marginAt(
     const missed = missedOnReduced(adaptive, measure, states(1), here, settled);
     const audit = auditOf(adaptive, measure, states, here, settled);
     const news = [...stability.missed.flatMap(({ right }) => [right.re, right.im]), ...audit.directions];
-    const settledForGood = stability.missed.length === 0 && missed.length === 0 && !audit.surprised;
+    // A rough disagreement is a sample to learn from once; after that it stands in the lower end.
+    const rough = audit.worst > roughAudit && restart === 0;
+    const settledForGood = stability.missed.length === 0 && missed.length === 0 && !audit.surprised && !rough;
     if (settledForGood || restart === mostRestarts) {
       return assemble(adaptive, measure, states, here, { settled, stability, audit, missed });
     }

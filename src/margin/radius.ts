@@ -37,6 +37,9 @@ function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Settin
   return { value: criticals[0]?.value ?? Number.POSITIVE_INFINITY, criticals, eigenvalues };
 }
 
+/** Backward error of a solve from which on its gain is not believed. */
+const worstBackwardError = 1e-8;
+
 function check(
   pencilAt: (multiplier: number) => Pencil,
   critical: Critical,
@@ -59,7 +62,7 @@ function check(
     value: unbounded ? 0 : 1 / gain.sigma,
     omega: critical.omega,
     error: gain.backwardError,
-    converged: gain.settled && Number.isFinite(gain.sigma),
+    converged: gain.settled && Number.isFinite(gain.sigma) && gain.backwardError < worstBackwardError,
     directions: realDirections(gain.x, gain.y),
     found: { kind: "peak", gain },
   };
