@@ -35,24 +35,31 @@ export function judge(
   progress: ReportProgress,
 ): Judgement {
   const { adaptive, measure, setting } = session;
-  let checks: EnvelopeCheck[] = [];
+  const { at, checks } =
+    fixed === undefined ? worstOfEnvelope(session, design, known, progress) : { at: fixed, checks: [] };
+  progress({ stage: "gathering evidence", done: 0, total: null });
+  const point = marginAt(adaptive, measure, session.valuesAt(design, at), setting);
+  const worse = checks.some((check) => check.value < point.value - 1e-6 * Math.max(1, Math.abs(point.value)));
+  const doubts = worse ? [...point.doubts, "a lower margin was met elsewhere in the envelope"] : point.doubts;
+  return { at, point, envelope: checks, doubts };
+}
+
+/** The worst operating point, searched again as long as a full-model check elsewhere finds a lower margin. */
+function worstOfEnvelope(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  known: readonly ReadonlyMap<string, number>[],
+  progress: ReportProgress,
+): { at: ReadonlyMap<string, number>; checks: readonly EnvelopeCheck[] } {
+  let checks: readonly EnvelopeCheck[] = [];
   for (let round = 0; ; round++) {
     progress({ stage: "settling the worst operating point", done: round, total: null });
     const points = [...known, ...checks.map((check) => check.at)];
-    const at = fixed ?? settledWorst(session, design, points, "fine", 1e-6, checks[0]?.at).at;
-    progress({ stage: "gathering evidence", done: round, total: null });
-    const point = marginAt(adaptive, measure, session.valuesAt(design, at), setting);
-    if (fixed !== undefined) return { at, point, envelope: [], doubts: point.doubts };
+    const { at, value } = settledWorst(session, design, points, "fine", 1e-6, checks[0]?.at);
     progress({ stage: "checking the envelope", done: round, total: null });
     checks = checkEnvelope(session, design, at);
-    const slack = 1e-6 * sizeOf(point.value, setting);
-    const worse = checks.some((check) => check.value < point.value - slack);
-    if (!worse || round === mostRounds) {
-      const doubts = worse
-        ? [...point.doubts, "a lower margin was met elsewhere in the envelope"]
-        : point.doubts;
-      return { at, point, envelope: checks, doubts };
-    }
+    const slack = 1e-6 * Math.max(1, Math.abs(value));
+    if (round === mostRounds || checks.every((check) => check.value >= value - slack)) return { at, checks };
   }
 }
 
