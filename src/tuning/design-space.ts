@@ -9,7 +9,8 @@ export interface LimitUse {
   readonly unit: string;
 }
 
-const atEnd = 1e-9;
+/** A variable this close to an end of its range (share of the range) is put on it: no layer of a nanometre. */
+const atEnd = 1e-6;
 
 /**
  * The designs of a problem as points of [0, 1]ⁿ, with its limits as dimensionless functions
