@@ -47,9 +47,9 @@ export function applyPencilAdjoint(
   x: ComplexVector,
 ): ComplexVector {
   const y = complexVector(pencil.order);
-  addAdjointScaled(y, pencil.mass, sRe * sRe - sIm * sIm, -2 * sRe * sIm, x);
-  addAdjointScaled(y, pencil.velocity, sRe, -sIm, x);
-  addAdjointScaled(y, pencil.displacement, 1, 0, x);
+  addScaled(y, pencil.mass.addTransposedInto, sRe * sRe - sIm * sIm, -2 * sRe * sIm, x);
+  addScaled(y, pencil.velocity.addTransposedInto, sRe, -sIm, x);
+  addScaled(y, pencil.displacement.addTransposedInto, 1, 0, x);
   return y;
 }
 
@@ -81,38 +81,24 @@ function combine(
   x: ComplexVector,
 ): ComplexVector {
   const y = complexVector(pencil.order);
-  addComplexScaled(y, pencil.mass, aRe, aIm, x);
-  addComplexScaled(y, pencil.velocity, bRe, bIm, x);
-  if (c !== 0) addComplexScaled(y, pencil.displacement, c, 0, x);
+  addScaled(y, pencil.mass.addInto, aRe, aIm, x);
+  addScaled(y, pencil.velocity.addInto, bRe, bIm, x);
+  if (c !== 0) addScaled(y, pencil.displacement.addInto, c, 0, x);
   return y;
 }
 
-function addComplexScaled(
+/** y ← y + c A x by whichever product of a real operator, A x or Aᵀ x, is handed over. */
+function addScaled(
   y: ComplexVector,
-  a: RealOperator,
+  add: RealOperator["addInto"],
   cRe: number,
   cIm: number,
   x: ComplexVector,
 ): void {
-  a.addInto(y.re, cRe, x.re);
-  a.addInto(y.im, cRe, x.im);
+  add(y.re, cRe, x.re);
+  add(y.im, cRe, x.im);
   if (cIm !== 0) {
-    a.addInto(y.re, -cIm, x.im);
-    a.addInto(y.im, cIm, x.re);
-  }
-}
-
-function addAdjointScaled(
-  y: ComplexVector,
-  a: RealOperator,
-  cRe: number,
-  cIm: number,
-  x: ComplexVector,
-): void {
-  a.addTransposedInto(y.re, cRe, x.re);
-  a.addTransposedInto(y.im, cRe, x.im);
-  if (cIm !== 0) {
-    a.addTransposedInto(y.re, -cIm, x.im);
-    a.addTransposedInto(y.im, cIm, x.re);
+    add(y.re, -cIm, x.im);
+    add(y.im, cIm, x.re);
   }
 }
