@@ -1,6 +1,6 @@
 import { createHash } from "node:crypto";
-import { accessSync, constants, mkdirSync } from "node:fs";
-import { basename, dirname, join } from "node:path";
+import { accessSync, constants, existsSync, mkdirSync } from "node:fs";
+import { basename, dirname, join, resolve } from "node:path";
 import { InputError } from "../errors.js";
 import type { InputFile } from "../problem/problem.js";
 import { writeAside } from "../problem/write-aside.js";
@@ -25,12 +25,24 @@ export function resultsFolder(request: JobRequest, inputs: readonly InputFile[])
  */
 export function makeFolder(folder: string): void {
   try {
-    mkdirSync(folder, { recursive: true });
+    makeLevels(resolve(folder));
     accessSync(folder, constants.W_OK);
   } catch (error) {
     const reason = error instanceof Error && "code" in error ? String(error.code) : String(error);
     const message = `the folder cannot be written to (${reason})`;
     throw InputError.of("output.unwritable", folder, message, "Give a folder you may write to.");
+  }
+}
+
+/** One level at a time: Node's own recursive call never returns where the file system invents its folders (/proc). */
+function makeLevels(folder: string): void {
+  if (existsSync(folder)) return;
+  makeLevels(dirname(folder));
+  try {
+    mkdirSync(folder);
+  } catch (error) {
+    // Another run may have made it in between.
+    if (!existsSync(folder)) throw error;
   }
 }
 

@@ -17,6 +17,7 @@ describe("bad input ends with 2, nothing on standard output, and", () => {
     ["a value that is no number", ["margin", "problem.json", "--set", "c=thick"], "name=value"],
     ["a design file without a design", ["margin", "problem.json", "--design", "problem.txt"], "result.json"],
     ["a folder below a file", ["margin", "problem.json", "--out", "problem.json/x"], "problem.json/x"],
+    ["a folder where none can be", ["margin", "problem.json", "--out", "/proc/x"], "/proc/x"],
     ["vectors below a file", ["margin", "problem.json", "--vectors", "problem.json/v.csv"], "problem.json"],
   ])("%s is named with a remedy", async (_, args, remedy) => {
     const folder = newFolder();
