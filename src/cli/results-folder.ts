@@ -1,6 +1,6 @@
 import { createHash } from "node:crypto";
 import { accessSync, constants, existsSync, mkdirSync } from "node:fs";
-import { basename, dirname, join, resolve } from "node:path";
+import { basename, dirname, join, resolve, sep } from "node:path";
 import { InputError } from "../errors.js";
 import type { InputFile } from "../problem/problem.js";
 import { writeAside } from "../problem/write-aside.js";
@@ -26,7 +26,8 @@ export function resultsFolder(request: JobRequest, inputs: readonly InputFile[])
 export function makeFolder(folder: string): void {
   try {
     makeLevels(resolve(folder));
-    accessSync(folder, constants.W_OK);
+    // A path ending in a separator is one of a folder only.
+    accessSync(join(folder, sep), constants.W_OK);
   } catch (error) {
     const reason = error instanceof Error && "code" in error ? String(error.code) : String(error);
     const message = `the folder cannot be written to (${reason})`;
