@@ -37,7 +37,7 @@ export function auditRadius(
     (peak) => peak.omega,
   );
   const count = Math.max(leastEvaluations, used.length);
-  const poles = Array.from(form.poles, (j) => form.eigen.im[j]);
+  const poles = Array.from(form.kept, (j) => form.poles.im[j]);
   const frequencies = auditFrequencies(setting, used, lowPeaks, poles, count);
   const pencil = adaptive.full.pencilAt(state);
   let worst = 0;

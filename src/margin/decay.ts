@@ -25,6 +25,7 @@ export function decay(kind: DecayKind): Measure {
       const eigen = quadraticEigen(massMatrix, velocityMatrix, displacementMatrix, setting.shift);
       const all = selectEigenvalues(
         eigen,
+        () => eigen,
         (re, im) => inBand(setting.band, im) && Number.isFinite(decayOf(kind, re, im)),
         (re, im) => decayOf(kind, re, im),
       );

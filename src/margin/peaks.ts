@@ -1,8 +1,7 @@
 import { type ComplexMatrix, complexZeros } from "../numerics/dense/matrix.js";
 import { largestSingularValue } from "../numerics/dense/svd.js";
 import type { Band } from "./band.js";
-import type { SpectralForm } from "./spectral-form.js";
-import { ownPeak, transferInto } from "./spectral-form.js";
+import { ownPeak, type SpectralForm, transferInto } from "./transfer.js";
 
 /** A local maximum of σ_max(H(iω)) over the band. */
 export interface Peak {
@@ -151,14 +150,14 @@ function polesThatMatter(
   band: Band,
   screen: number,
 ): Set<number> {
-  const own = Array.from(form.poles, (_, slot) => ownPeak(form, slot));
+  const own = Array.from(form.kept, (_, slot) => ownPeak(form, slot));
   const order = Array.from(own.keys()).sort((a, b) => own[b] - own[a]);
   const kept = new Set<number>();
   let highest = 0;
   for (const slot of order) {
     if (own[slot] < screen * highest) break;
     kept.add(slot);
-    const omega = form.eigen.im[form.poles[slot]];
+    const omega = form.poles.im[form.kept[slot]];
     const height = omega >= band.low && omega <= band.high ? gain(omega) : 0;
     if (Number.isFinite(height)) highest = Math.max(highest, height);
   }
@@ -171,13 +170,12 @@ function startGrid(
   band: Band,
   { screen, extra }: PeakOptions,
 ): number[] {
-  const { eigen, poles } = form;
+  const { poles, kept } = form;
   const matters = polesThatMatter(form, gain, band, screen);
   const marks: Mark[] = [band.low, ...extra].map((omega) => ({ omega, width: 0 }));
-  let furthest = eigen.shift;
-  poles.forEach((j, slot) => {
-    if (!Number.isFinite(eigen.re[j])) return;
-    const [size, im, width] = [Math.hypot(eigen.re[j], eigen.im[j]), eigen.im[j], Math.abs(eigen.re[j])];
+  let furthest = poles.shift;
+  kept.forEach((j, slot) => {
+    const [size, im, width] = [Math.hypot(poles.re[j], poles.im[j]), poles.im[j], Math.abs(poles.re[j])];
     furthest = Math.max(furthest, size);
     if (!matters.has(slot)) return;
     marks.push({ omega: im, width });

@@ -1,5 +1,6 @@
 import type { Pencil } from "../model/pencil.js";
 import type { ComplexVector } from "../numerics/dense/matrix.js";
+import { type QuadraticEigen, quadraticEigen } from "../numerics/dense/quadratic-eigen.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
 import { channelGain } from "./channel-gain.js";
 import {
@@ -23,18 +24,29 @@ import {
 function estimate(pencilAt: (multiplier: number) => DensePencil, setting: Setting): Estimate {
   const pencil = pencilAt(1);
   const form = spectralForm(pencil, setting.shift);
-  const eigenvalues = upperHalf(form.eigen);
-  const unstable = unstableCriticals(form.eigen, setting);
+  const vectors = vectorsOf(pencil, setting.shift);
+  const eigenvalues = upperHalf(form.poles);
+  const unstable = unstableCriticals(form.poles, vectors, setting);
   if (unstable.length > 0) return { value: unstable[0].value, criticals: unstable, eigenvalues };
   const undamped = poleOnAxis(form, pencil, setting.band);
   if (undamped >= 0) {
-    const critical = eigenvalueCritical(form.eigen, undamped, 0);
+    const critical = eigenvalueCritical(form.poles, vectors, undamped, 0);
     return { value: 0, criticals: [critical], eigenvalues };
   }
   const criticals = findPeaks(form, setting.band, setting.peaks)
     .filter((peak) => peak.sigma > 0)
     .map(({ omega, sigma }) => ({ kind: "peak" as const, value: 1 / sigma, omega, sigma }));
   return { value: criticals[0]?.value ?? Number.POSITIVE_INFINITY, criticals, eigenvalues };
+}
+
+/** The decomposition of a pencil, made once when first asked for. */
+function vectorsOf(pencil: DensePencil, shift: number): () => QuadraticEigen {
+  let eigen: QuadraticEigen | undefined;
+  return () => {
+    const { massMatrix, velocityMatrix, displacementMatrix } = pencil;
+    eigen ??= quadraticEigen(massMatrix, velocityMatrix, displacementMatrix, shift);
+    return eigen;
+  };
 }
 
 /** Backward error of a solve from which on its gain is not believed. */

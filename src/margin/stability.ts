@@ -1,5 +1,6 @@
 import type { Pencil } from "../model/pencil.js";
 import { type ComplexVector, complexColumn } from "../numerics/dense/matrix.js";
+import type { QuadraticPoles } from "../numerics/dense/quadratic-companion.js";
 import type { QuadraticEigen } from "../numerics/dense/quadratic-eigen.js";
 import { inBand } from "./band.js";
 import { refineEigenpair } from "./eigenpair.js";
@@ -26,9 +27,14 @@ export function dampingRatio(re: number, im: number): number {
 }
 
 /** Eigenvalues with Im ≥ 0 right of the axis and inside the band, most unstable first. */
-export function unstableCriticals(eigen: QuadraticEigen, setting: Setting): Critical[] {
+export function unstableCriticals(
+  poles: QuadraticPoles,
+  vectors: () => QuadraticEigen,
+  setting: Setting,
+): Critical[] {
   return selectEigenvalues(
-    eigen,
+    poles,
+    vectors,
     (re, im) => inBand(setting.band, im) && isUnstable(re, im, setting.shift),
     (re) => -re / setting.omegaRef,
   );
@@ -36,29 +42,43 @@ export function unstableCriticals(eigen: QuadraticEigen, setting: Setting): Crit
 
 /** Eigenvalues with Im ≥ 0 that pass, as criticals with the value given, smallest value first. */
 export function selectEigenvalues(
-  eigen: QuadraticEigen,
+  poles: QuadraticPoles,
+  vectors: () => QuadraticEigen,
   pass: (re: number, im: number) => boolean,
   value: (re: number, im: number) => number,
 ): Critical[] {
   const found: Critical[] = [];
-  for (let j = 0; j < eigen.re.length; j++) {
-    const re = eigen.re[j];
-    const im = eigen.im[j];
+  for (let j = 0; j < poles.re.length; j++) {
+    const re = poles.re[j];
+    const im = poles.im[j];
     if (im < 0 || !Number.isFinite(re) || !pass(re, im)) continue;
-    found.push(eigenvalueCritical(eigen, j, value(re, im)));
+    found.push(eigenvalueCritical(poles, vectors, j, value(re, im)));
   }
   return found.sort((a, b) => a.value - b.value);
 }
 
-export function eigenvalueCritical(eigen: QuadraticEigen, j: number, value: number): Critical {
-  const right = complexColumn(eigen.right, j);
+/**
+ * Eigenvalue number j as a critical whose vectors are asked for when first needed: a search needs none.
+ *
+ * @param vectors - decomposition of the same pencil with the same shift, hence with the same order of eigenvalues.
+ */
+export function eigenvalueCritical(
+  poles: QuadraticPoles,
+  vectors: () => QuadraticEigen,
+  j: number,
+  value: number,
+): Critical {
   return {
     kind: "eigenvalue",
     value,
-    re: eigen.re[j],
-    omega: eigen.im[j],
-    right,
-    left: leftVector(eigen, j),
+    re: poles.re[j],
+    omega: poles.im[j],
+    get right() {
+      return complexColumn(vectors().right, j);
+    },
+    get left() {
+      return leftVector(vectors(), j);
+    },
   };
 }
 
@@ -72,9 +92,9 @@ export function leftVector(eigen: QuadraticEigen, j: number): ComplexVector {
 }
 
 /** Eigenvalues with Im ≥ 0 of a decomposition. */
-export function upperHalf(eigen: QuadraticEigen): { re: Float64Array; im: Float64Array } {
-  const keep = Array.from(eigen.im.keys()).filter((j) => eigen.im[j] >= 0 && Number.isFinite(eigen.re[j]));
-  return { re: Float64Array.from(keep, (j) => eigen.re[j]), im: Float64Array.from(keep, (j) => eigen.im[j]) };
+export function upperHalf({ re, im }: QuadraticPoles): { re: Float64Array; im: Float64Array } {
+  const keep = Array.from(im.keys()).filter((j) => im[j] >= 0 && Number.isFinite(re[j]));
+  return { re: Float64Array.from(keep, (j) => re[j]), im: Float64Array.from(keep, (j) => im[j]) };
 }
 
 /** Inverse iteration on the full model from a reduced eigenpair; `value` turns λ into the measure. */

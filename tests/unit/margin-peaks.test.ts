@@ -3,7 +3,8 @@ import { channelGain } from "../../src/margin/channel-gain.js";
 import { levelCrossings } from "../../src/margin/level-set.js";
 import { missedPeaks } from "../../src/margin/missed-peaks.js";
 import { findPeaks, gainFunction, peakDefaults, polishPeak } from "../../src/margin/peaks.js";
-import { spectralForm, transferInto } from "../../src/margin/spectral-form.js";
+import { spectralForm } from "../../src/margin/spectral-form.js";
+import { transferInto } from "../../src/margin/transfer.js";
 import { complexZeros } from "../../src/numerics/dense/matrix.js";
 import { largestSingularValue } from "../../src/numerics/dense/svd.js";
 import {

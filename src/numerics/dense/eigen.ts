@@ -1,10 +1,8 @@
 /** Eigenvalues and eigenvectors of general real matrices. */
 
-import { invariant } from "../../errors.js";
-import { balance } from "./balance.js";
+import { balancedHessenberg, clearReflectors, inUnits } from "./balanced-hessenberg.js";
 import { addTransposedProductInto, type Block } from "./block-kernels.js";
-import { powerOfTwoAbove, requireFiniteMaximum } from "./finite.js";
-import { hessenbergBasis, reduceToHessenberg } from "./hessenberg.js";
+import { hessenbergBasis } from "./hessenberg.js";
 import { type ComplexMatrix, complexZeros, type DenseMatrix } from "./matrix.js";
 import { realSchur } from "./real-schur.js";
 import { leftSchurVectors, rightSchurVectors } from "./schur-vectors.js";
@@ -35,18 +33,13 @@ export interface Eigen extends Eigenvalues {
  * @throws NumericalError `numerics.not-finite`, `numerics.no-convergence`.
  */
 export function eigenvalues(a: DenseMatrix): Eigenvalues {
-  const { work, scale } = prepare(a);
   const n = a.rows;
-  balance(work, null, n);
-  // Balancing shrinks; the tests of the iteration expect norm about 1.
-  const again = rescale(work);
-  const tau = new Float64Array(n);
-  reduceToHessenberg(work, n, tau);
-  clearBelowSubdiagonal(work, n);
+  const { h, unit } = balancedHessenberg(a);
+  clearReflectors(h, n);
   const re = new Float64Array(n);
   const im = new Float64Array(n);
-  realSchur(work, n, null, re, im);
-  return restored(re, im, scale, again);
+  realSchur(h, n, null, re, im);
+  return inUnits(re, im, unit);
 }
 
 /**
@@ -57,14 +50,10 @@ export function eigenvalues(a: DenseMatrix): Eigenvalues {
  * @throws as `eigenvalues`.
  */
 export function eigen(a: DenseMatrix): Eigen {
-  const { work: t, scale } = prepare(a);
   const n = a.rows;
-  const weights = balance(t, null, n);
-  const again = rescale(t);
-  const tau = new Float64Array(n);
-  reduceToHessenberg(t, n, tau);
+  const { h: t, tau, weights, unit } = balancedHessenberg(a);
   const z = hessenbergBasis(t, n, tau);
-  clearBelowSubdiagonal(t, n);
+  clearReflectors(t, n);
   const re = new Float64Array(n);
   const im = new Float64Array(n);
   realSchur(t, n, z, re, im);
@@ -75,31 +64,7 @@ export function eigen(a: DenseMatrix): Eigen {
   unpack(backTransformed(z, leftSchurVectors(t, n, re, im), n, false), im, left);
   const defective = new Uint8Array(n);
   for (let j = 0; j < n; j++) finishVectors(right, left, j, weights, defective);
-  return { ...restored(re, im, scale, again), right, left, defective };
-}
-
-function prepare(a: DenseMatrix): { work: Float64Array; scale: number } {
-  invariant(a.rows === a.cols, `eigenvalues of a ${a.rows}×${a.cols} matrix`);
-  const scale = powerOfTwoAbove(requireFiniteMaximum(a.values, "A matrix whose eigenvalues are wanted"));
-  return { work: a.values.map((x) => x / scale), scale };
-}
-
-function rescale(work: Float64Array): number {
-  const scale = powerOfTwoAbove(requireFiniteMaximum(work, "A balanced matrix"));
-  if (scale !== 1) for (let i = 0; i < work.length; i++) work[i] /= scale;
-  return scale;
-}
-
-function restored(re: Float64Array, im: Float64Array, scale: number, again: number): Eigenvalues {
-  for (let j = 0; j < re.length; j++) {
-    re[j] = re[j] * again * scale;
-    im[j] = im[j] * again * scale;
-  }
-  return { re, im };
-}
-
-function clearBelowSubdiagonal(h: Float64Array, n: number): void {
-  for (let j = 0; j < n; j++) h.fill(0, j * n + Math.min(j + 2, n), (j + 1) * n);
+  return { ...inUnits(re, im, unit), right, left, defective };
 }
 
 /** Z X with X upper (or lower) triangular up to one subdiagonal, by panels of columns that skip the zeros. */

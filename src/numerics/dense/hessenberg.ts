@@ -176,6 +176,19 @@ export function hessenbergBasis(a: Float64Array, n: number, tau: Float64Array): 
   return q;
 }
 
+/** x ← Qᵀ x for every vector of length n that stands in `x`, Q as in `hessenbergBasis`. */
+export function toHessenbergBasis(a: Float64Array, n: number, tau: Float64Array, x: Float64Array): void {
+  const v = new Float64Array(n);
+  for (let k = 0; k < n - 2; k++) {
+    if (tau[k] === 0) continue;
+    v[k + 1] = 1;
+    for (let i = k + 2; i < n; i++) v[i] = a[k * n + i];
+    let at = 0;
+    for (; at + n < x.length; at += 2 * n) reflectColumnPair(x, at, n, k + 1, tau[k], v);
+    if (at < x.length) reflectColumn(x, at, n, k + 1, tau[k], v);
+  }
+}
+
 function reflectColumnPair(
   q: Float64Array,
   p: number,

@@ -11,7 +11,7 @@ const tiny = Number.MIN_VALUE * 2 ** 100;
 interface Iteration {
   readonly h: Float64Array;
   readonly n: number;
-  /** Row i of Z at `i * n`, or null: then only the active block of H is kept up. */
+  /** Rows of length n to be multiplied by Z, or null: then only the active block of H is kept up. */
   readonly z: Float64Array | null;
   readonly reflectors: Reflectors;
   /** First column of the double-shift polynomial, [x, y, z]. */
@@ -29,7 +29,7 @@ interface Iteration {
  *
  * @param h - H, n×n by columns, zero below the subdiagonal, of norm about 1.
  *   With `z` it becomes the quasi-triangular T with standardised 2×2 blocks; without, it is destroyed.
- * @param z - Row i of Q at `i * n`; becomes Q Z. Null for eigenvalues only.
+ * @param z - Rows of length n one after the other (those of Q, or any); becomes z Z. Null for eigenvalues only.
  * @param re - Filled with the real parts, length n.
  * @param im - Filled with the imaginary parts, conjugate pairs adjacent, positive first.
  * @throws NumericalError `numerics.no-convergence` after 60 sweeps without a deflation.
@@ -181,7 +181,7 @@ function sweep(it: Iteration, first: number, begin: number, last: number): void 
     reflectVectors(h, (colEnd + 1) * n, n, right - colEnd, reflectors, k0, end, short);
     reflectColumns(h, n, top, k0, reflectors, k0, end, short);
   }
-  if (z !== null) reflectVectors(z, 0, n, n, reflectors, begin, last, true);
+  if (z !== null) reflectVectors(z, 0, n, z.length / n, reflectors, begin, last, true);
 }
 
 // Makes reflector k and applies it within the window: rows k0 …, columns up to colEnd.
@@ -299,7 +299,7 @@ function deflatePair(it: Iteration, i: number, re: Float64Array, im: Float64Arra
   h[q + i + 1] = d;
   rotateEntries(h, i + (i + 2) * n, i + 1 + (i + 2) * n, n, n - i - 2, cosine, sine);
   rotateEntries(h, p, q, 1, i, cosine, sine);
-  rotateEntries(z, i, i + 1, n, n, cosine, sine);
+  rotateEntries(z, i, i + 1, n, z.length / n, cosine, sine);
 }
 
 function rotateEntries(
