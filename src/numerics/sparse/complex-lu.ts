@@ -7,13 +7,13 @@
 
 import { invariant, NumericalError } from "../../errors.js";
 import type { ComplexMatrix } from "../dense/matrix.js";
+import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { SymbolicAnalysis } from "./analysis.js";
 import type { SolveReport } from "./backward-error.js";
-import { type ComplexFront, eliminateComplexFront } from "./complex-front.js";
 import { ComplexRefinement } from "./complex-refinement.js";
 import { type ComplexFactor, solveWithFactor } from "./complex-substitution.js";
 import { equilibrationExponents } from "./equilibration.js";
-import { FactorStore, grown } from "./factor-store.js";
+import { FactorStore } from "./factor-store.js";
 import { childrenOf, type FrontLayout, layOutFront, updatePlacesInto } from "./front-stack.js";
 import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
 
@@ -53,7 +53,9 @@ export function factorComplex(
   invariant(analysis.order === pattern.cols, "factorComplex: the pattern is not the one analysed");
   invariant(values.re.length === entries && values.im.length === entries, "factorComplex: a value per entry");
   const exponents = equilibrationExponents(pattern, moduli(values));
-  const factor = new ComplexMultifrontal(analysis, scaledValues(pattern, values, exponents)).factor();
+  const factor = withWorkspace((workspace) =>
+    new ComplexMultifrontal(analysis, scaledValues(pattern, values, exponents), workspace).factor(),
+  );
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const determinant = determinantOf(factor, exponents);
   const refinement = new ComplexRefinement(pattern, values, scale);
@@ -99,152 +101,169 @@ function scaledValues(pattern: SparsePattern, values: ComplexValues, exponents: 
   return { re, im };
 }
 
-/** One run over the tree of fronts. */
+/** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
 class ComplexMultifrontal {
   private readonly analysis: SymbolicAnalysis;
   private readonly values: ComplexValues;
+  private readonly workspace: Workspace;
   private readonly tiny: number;
   private readonly placeOf: Int32Array;
-  private rowPlaces: Int32Array;
-  private colPlaces: Int32Array;
-  private frontRe: Float64Array;
-  private frontIm: Float64Array;
-  private stackRe: Float64Array;
-  private stackIm: Float64Array;
-  private stackTop = 0;
+  /** First byte above the waiting updates. */
+  private top: number;
   private readonly factorOut: ComplexFactor;
 
-  constructor(analysis: SymbolicAnalysis, values: ComplexValues) {
-    const { largestFront, stackPeak, predictedNonzeros } = analysis;
+  constructor(analysis: SymbolicAnalysis, values: ComplexValues, workspace: Workspace) {
     this.analysis = analysis;
     this.values = values;
+    this.workspace = workspace;
+    this.top = workspace.begin;
     let largest = 0;
     for (let p = 0; p < values.re.length; p++) {
       largest = Math.max(largest, Math.abs(values.re[p]), Math.abs(values.im[p]));
     }
     this.tiny = Number.EPSILON * (largest > 0 ? largest : 1);
     this.placeOf = new Int32Array(analysis.order);
-    this.rowPlaces = new Int32Array(largestFront);
-    this.colPlaces = new Int32Array(largestFront);
-    this.frontRe = new Float64Array(largestFront * largestFront);
-    this.frontIm = new Float64Array(largestFront * largestFront);
-    this.stackRe = new Float64Array(stackPeak);
-    this.stackIm = new Float64Array(stackPeak);
     this.factorOut = {
       order: analysis.order,
       fronts: [],
-      re: new FactorStore(predictedNonzeros),
-      im: new FactorStore(predictedNonzeros),
+      re: new FactorStore(analysis.predictedNonzeros),
+      im: new FactorStore(analysis.predictedNonzeros),
       nonzeros: 0,
       perturbedPivots: 0,
     };
   }
 
   factor(): ComplexFactor {
-    const { analysis, factorOut } = this;
+    const { analysis, factorOut, workspace } = this;
     const children = childrenOf(analysis);
     for (let s = 0; s < analysis.fronts; s++) {
       const layout = layOutFront(analysis, s, children[s], factorOut.fronts, this.placeOf);
-      const front = this.assemble(s, layout, children[s]);
-      const isRoot = analysis.parent[s] < 0;
-      const { pivots, perturbed } = eliminateComplexFront(front, { tiny: this.tiny, isRoot });
-      factorOut.perturbedPivots += perturbed;
-      this.keepFactor(front, pivots);
-      this.push(front, pivots);
+      const front = this.placeFront(layout);
+      this.enterEntries(s, layout, front);
+      const base = this.addUpdates(layout, children[s], front);
+      const pivots = this.eliminate(layout, front, analysis.parent[s] < 0);
+      factorOut.perturbedPivots += workspace.kernel.perturbedPivots();
+      this.keepFactor(layout, front, pivots);
+      this.packUpdate(layout.order, front, pivots, base);
     }
     return factorOut;
   }
 
-  private assemble(s: number, layout: FrontLayout, children: Int32Array): ComplexFront {
-    const { own, delayed, order, rowIds, colIds } = layout;
-    this.makeRoom(order);
-    const re = this.frontRe;
-    const im = this.frontIm;
-    re.fill(0, 0, order * order);
-    im.fill(0, 0, order * order);
+  private placeFront({ order }: FrontLayout): FrontPlace {
+    const entries = 8 * order * order;
+    const re = this.top;
+    const im = re + entries;
+    const rowIds = im + entries;
+    const colIds = rowIds + 4 * order;
+    this.workspace.ensure(colIds + 4 * order);
+    this.workspace.doubles.fill(0, re / 8, rowIds / 8);
+    return { re, im, rowIds, colIds };
+  }
+
+  private enterEntries(s: number, { own, delayed, order }: FrontLayout, front: FrontPlace): void {
     const { entryStart, entries, entryRow, entryCol } = this.analysis;
+    const { re, im } = this.values;
+    const { doubles } = this.workspace;
+    const toRe = front.re / 8;
+    const toIm = front.im / 8;
     for (let t = entryStart[s]; t < entryStart[s + 1]; t++) {
       const i = entryRow[t] < own ? entryRow[t] : entryRow[t] + delayed;
       const j = entryCol[t] < own ? entryCol[t] : entryCol[t] + delayed;
-      re[i + j * order] = this.values.re[entries[t]];
-      im[i + j * order] = this.values.im[entries[t]];
+      doubles[toRe + i + j * order] = re[entries[t]];
+      doubles[toIm + i + j * order] = im[entries[t]];
     }
+  }
+
+  /** Adds the children's updates, the last of which lies on top; returns where the first begins. */
+  private addUpdates({ own, delayed, order }: FrontLayout, children: Int32Array, front: FrontPlace): number {
+    const { kernel, integers } = this.workspace;
     let delayedAt = own + delayed;
+    let begin = this.top;
     for (let t = children.length - 1; t >= 0; t--) {
-      delayedAt -= this.factorOut.fronts[children[t]].delayed;
-      this.popInto(order, children[t], delayedAt);
+      const child = this.factorOut.fronts[children[t]];
+      const size = child.order - child.pivots;
+      delayedAt -= child.delayed;
+      begin -= 16 * size * size;
+      // Below the delayed part rows and columns of an update carry the same dofs.
+      updatePlacesInto(integers, front.rowIds / 4, child, delayedAt, this.placeOf);
+      kernel.addSquareUpdate(front.re, order, begin, size, front.rowIds);
+      kernel.addSquareUpdate(front.im, order, begin + 8 * size * size, size, front.rowIds);
     }
-    return { re, im, order, summed: own + delayed, rowIds, colIds };
+    return begin;
   }
 
-  private makeRoom(order: number): void {
-    if (order * order > this.frontRe.length) {
-      this.frontRe = new Float64Array(order * order);
-      this.frontIm = new Float64Array(order * order);
-    }
-    if (order > this.rowPlaces.length) {
-      this.rowPlaces = new Int32Array(order);
-      this.colPlaces = new Int32Array(order);
-    }
-  }
-
-  /** Adds the update of the child on top of the stack. */
-  private popInto(order: number, child: number, delayedAt: number): void {
-    const { rowPlaces, colPlaces, frontRe, frontIm, stackRe, stackIm } = this;
-    const eliminated = this.factorOut.fronts[child];
-    const size = eliminated.order - eliminated.pivots;
-    updatePlacesInto(rowPlaces, eliminated, delayedAt, this.placeOf);
-    // Below the delayed part rows and columns of an update carry the same dofs.
-    colPlaces.set(rowPlaces.subarray(0, size));
-    this.stackTop -= size * size;
-    let q = this.stackTop;
-    for (let j = 0; j < size; j++) {
-      const column = colPlaces[j] * order;
-      for (let i = 0; i < size; i++, q++) {
-        frontRe[column + rowPlaces[i]] += stackRe[q];
-        frontIm[column + rowPlaces[i]] += stackIm[q];
-      }
-    }
+  private eliminate(layout: FrontLayout, front: FrontPlace, isRoot: boolean): number {
+    const { own, delayed, order, rowIds, colIds } = layout;
+    const { kernel, integers } = this.workspace;
+    const { re, im } = front;
+    integers.set(rowIds, front.rowIds / 4);
+    integers.set(colIds, front.colIds / 4);
+    const summed = own + delayed;
+    const root = isRoot ? 1 : 0;
+    const pivots = kernel.eliminateComplex(
+      re,
+      im,
+      order,
+      summed,
+      front.rowIds,
+      front.colIds,
+      this.tiny,
+      root,
+    );
+    rowIds.set(integers.subarray(front.rowIds / 4, front.rowIds / 4 + order));
+    colIds.set(integers.subarray(front.colIds / 4, front.colIds / 4 + order));
+    return pivots;
   }
 
   /** Stores the pivot columns of L and U₁₁ and the pivot rows of U beyond them. */
-  private keepFactor(front: ComplexFront, pivots: number): void {
-    const { re, im, order, summed, rowIds, colIds } = front;
+  private keepFactor(
+    { own, delayed, order, rowIds, colIds }: FrontLayout,
+    front: FrontPlace,
+    pivots: number,
+  ): void {
+    const { re, im, fronts } = this.factorOut;
+    const { doubles } = this.workspace;
     const size = pivots * (2 * order - pivots);
-    const { chunk, at } = this.factorOut.re.reserve(size);
-    this.factorOut.im.reserve(size);
-    const outRe = this.factorOut.re.array(chunk);
-    const outIm = this.factorOut.im.array(chunk);
-    outRe.set(re.subarray(0, pivots * order), at);
-    outIm.set(im.subarray(0, pivots * order), at);
-    let q = at + pivots * order;
-    for (let j = pivots; j < order; j++) {
-      for (let p = j * order; p < j * order + pivots; p++, q++) {
-        outRe[q] = re[p];
-        outIm[q] = im[p];
-      }
-    }
+    const { chunk, at } = re.reserve(size);
+    im.reserve(size);
+    copyPivotPart(re.array(chunk), at, doubles, front.re / 8, order, pivots);
+    copyPivotPart(im.array(chunk), at, doubles, front.im / 8, order, pivots);
     this.factorOut.nonzeros += size;
-    this.factorOut.fronts.push({ order, pivots, delayed: summed - pivots, rowIds, colIds, chunk, at });
+    fronts.push({ order, pivots, delayed: own + delayed - pivots, rowIds, colIds, chunk, at });
   }
 
-  private push(front: ComplexFront, pivots: number): void {
-    const { re, im, order } = front;
+  /** Moves the update down to `base`, over the children's that it contains. */
+  private packUpdate(order: number, front: FrontPlace, pivots: number, base: number): void {
+    const { kernel } = this.workspace;
     const size = order - pivots;
-    const end = this.stackTop + size * size;
-    if (end > this.stackRe.length) {
-      this.stackRe = grown(this.stackRe, this.stackTop, end);
-      this.stackIm = grown(this.stackIm, this.stackTop, end);
-    }
-    const { stackRe, stackIm } = this;
-    let q = this.stackTop;
-    for (let j = pivots; j < order; j++) {
-      for (let p = pivots + j * order; p < (j + 1) * order; p++, q++) {
-        stackRe[q] = re[p];
-        stackIm[q] = im[p];
-      }
-    }
-    this.stackTop = end;
+    const skipped = 8 * pivots * (order + 1);
+    kernel.packSquare(base, front.re + skipped, order, size);
+    kernel.packSquare(base + 8 * size * size, front.im + skipped, order, size);
+    this.top = base + 16 * size * size;
+  }
+}
+
+/** Byte addresses of a front in the workspace. */
+interface FrontPlace {
+  readonly re: number;
+  readonly im: number;
+  readonly rowIds: number;
+  readonly colIds: number;
+}
+
+/** The first columns of a front, then the first rows of the others. */
+function copyPivotPart(
+  to: Float64Array,
+  at: number,
+  from: Float64Array,
+  front: number,
+  order: number,
+  pivots: number,
+): void {
+  to.set(from.subarray(front, front + pivots * order), at);
+  let q = at + pivots * order;
+  for (let j = pivots; j < order; j++) {
+    for (let p = front + j * order; p < front + j * order + pivots; p++, q++) to[q] = from[p];
   }
 }
 

@@ -5,16 +5,8 @@
  */
 
 import type { ComplexMatrix } from "../dense/matrix.js";
-import {
-  type ComplexBlock,
-  solveUnitLowerAdjointInPlace,
-  solveUnitLowerInPlace,
-  solveUpperAdjointInPlace,
-  solveUpperInPlace,
-  subtractProductInto,
-  subtractThinAdjointProductInto,
-  subtractThinProductInto,
-} from "./complex-kernels.js";
+import type { ComplexSolve } from "../kernels/kernel.js";
+import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { FactorStore } from "./factor-store.js";
 import type { EliminatedFront } from "./front-stack.js";
 
@@ -35,10 +27,8 @@ export interface ComplexFactor {
 
 /** Right-hand sides taken through the tree together. */
 const BLOCK_COLUMNS = 48;
-/** From this many right-hand sides on, packing pays. */
-const PACKED_FROM = 4;
-/** Triangles are solved in blocks of this size. */
-const TRIANGLE = 24;
+/** Columns of a factor brought into the workspace at a time. */
+const PANEL = 24;
 
 /** X ← D (L U)⁻¹ D X, or its conjugate transpose; X is n×k. */
 export function solveWithFactor(
@@ -48,16 +38,16 @@ export function solveWithFactor(
   adjoint: boolean,
 ): void {
   const n = factor.order;
-  let largest = 0;
-  for (const front of factor.fronts) largest = Math.max(largest, front.order);
   for (let first = 0; first < x.cols; first += BLOCK_COLUMNS) {
     const cols = Math.min(BLOCK_COLUMNS, x.cols - first);
     const re = x.re.subarray(first * n, (first + cols) * n);
     const im = x.im.subarray(first * n, (first + cols) * n);
     scaleRows(scale, re, im, cols);
-    const substitution = new Substitution(factor, largest, { re, im, at: 0, stride: n }, cols);
-    if (adjoint) substitution.solveAdjoint();
-    else substitution.solve();
+    withWorkspace((workspace) => {
+      const substitution = new Substitution(factor, { rows: n, cols, re, im }, workspace);
+      if (adjoint) substitution.solveAdjoint();
+      else substitution.solve();
+    });
     scaleRows(scale, re, im, cols);
   }
 }
@@ -73,25 +63,32 @@ function scaleRows(scale: Float64Array, re: Float64Array, im: Float64Array, cols
 
 class Substitution {
   private readonly factor: ComplexFactor;
-  /** Right-hand sides, overwritten by the result of the forward pass. */
-  private readonly b: ComplexBlock;
-  private readonly x: ComplexBlock;
+  private readonly workspace: Workspace;
+  /** Right-hand sides, overwritten by the result of the forward pass, then by the solution. */
+  private readonly b: ComplexMatrix;
+  private readonly x: ComplexMatrix;
   private readonly cols: number;
-  /** The rows of one front, gathered. */
-  private readonly local: ComplexBlock;
+  /** Rows of the largest front: distance between the columns of the local rows. */
+  private readonly stride: number;
+  /** Byte addresses of the gathered rows of one front, and of the columns of its factor in use. */
+  private readonly localRe: number;
+  private readonly localIm: number;
+  private readonly panelRe: number;
+  private readonly panelIm: number;
 
-  constructor(factor: ComplexFactor, largest: number, b: ComplexBlock, cols: number) {
+  constructor(factor: ComplexFactor, b: ComplexMatrix, workspace: Workspace) {
+    const { rows, cols } = b;
     this.factor = factor;
+    this.workspace = workspace;
     this.b = b;
     this.cols = cols;
-    const n = factor.order;
-    this.x = { re: new Float64Array(n * cols), im: new Float64Array(n * cols), at: 0, stride: n };
-    this.local = {
-      re: new Float64Array(largest * cols),
-      im: new Float64Array(largest * cols),
-      at: 0,
-      stride: largest,
-    };
+    this.x = { rows, cols, re: new Float64Array(rows * cols), im: new Float64Array(rows * cols) };
+    this.stride = factor.fronts.reduce((most, { order }) => Math.max(most, order), 0);
+    this.localRe = workspace.begin;
+    this.localIm = this.localRe + 8 * this.stride * cols;
+    this.panelRe = this.localIm + 8 * this.stride * cols;
+    this.panelIm = this.panelRe + 8 * this.stride * PANEL;
+    workspace.ensure(this.panelIm + 8 * this.stride * PANEL);
   }
 
   solve(): void {
@@ -132,22 +129,28 @@ class Substitution {
     b.im.set(x.im);
   }
 
-  private gather(source: ComplexBlock, ids: Int32Array, from: number, to: number): void {
-    const { re, im, stride } = this.local;
+  private gather(source: ComplexMatrix, ids: Int32Array, from: number, to: number): void {
+    const { doubles } = this.workspace;
     for (let c = 0; c < this.cols; c++) {
+      const column = c * source.rows;
+      const toRe = this.localRe / 8 + c * this.stride;
+      const toIm = this.localIm / 8 + c * this.stride;
       for (let i = from; i < to; i++) {
-        re[i + c * stride] = source.re[ids[i] + c * source.stride];
-        im[i + c * stride] = source.im[ids[i] + c * source.stride];
+        doubles[toRe + i] = source.re[column + ids[i]];
+        doubles[toIm + i] = source.im[column + ids[i]];
       }
     }
   }
 
-  private scatter(target: ComplexBlock, ids: Int32Array, from: number, to: number): void {
-    const { re, im, stride } = this.local;
+  private scatter(target: ComplexMatrix, ids: Int32Array, from: number, to: number): void {
+    const { doubles } = this.workspace;
     for (let c = 0; c < this.cols; c++) {
+      const column = c * target.rows;
+      const fromRe = this.localRe / 8 + c * this.stride;
+      const fromIm = this.localIm / 8 + c * this.stride;
       for (let i = from; i < to; i++) {
-        target.re[ids[i] + c * target.stride] = re[i + c * stride];
-        target.im[ids[i] + c * target.stride] = im[i + c * stride];
+        target.re[column + ids[i]] = doubles[fromRe + i];
+        target.im[column + ids[i]] = doubles[fromIm + i];
       }
     }
   }
@@ -155,70 +158,121 @@ class Substitution {
   /** w₁ ← L₁₁⁻¹ w₁, w₂ ← w₂ − L₂₁ w₁. */
   private forward(front: ComplexFrontFactor): void {
     const { order, pivots } = front;
-    for (let k = 0; k < pivots; k += TRIANGLE) {
-      const size = Math.min(TRIANGLE, pivots - k);
-      solveUnitLowerInPlace(this.lower(front, k, k), this.rows(k), this.cols, size);
-      const next = k + size;
-      this.subtract(this.rows(next), this.lower(front, next, k), this.rows(k), order - next, size);
+    const { kernel } = this.workspace;
+    for (let k = 0; k < pivots; k += PANEL) {
+      const size = Math.min(PANEL, pivots - k);
+      this.fetch(front, k * order, size * order);
+      this.triangle(kernel.solveComplexUnitLower, k, order, k, size);
+      this.subtract(k + size, k + size, order, k, order - k - size, size, false);
     }
   }
 
   /** w₁ ← U₁₁⁻¹ (w₁ − U₁₂ w₂). */
   private backward(front: ComplexFrontFactor): void {
     const { order, pivots } = front;
-    this.subtract(this.rows(0), this.upper(front), this.rows(pivots), pivots, order - pivots);
-    for (let end = pivots; end > 0; end = end - 1 - ((end - 1) % TRIANGLE)) {
-      const k = end - 1 - ((end - 1) % TRIANGLE);
-      solveUpperInPlace(this.lower(front, k, k), this.rows(k), this.cols, end - k);
-      this.subtract(this.rows(0), this.lower(front, 0, k), this.rows(k), k, end - k);
+    const { kernel } = this.workspace;
+    this.forUpper(front, (j, columns) => this.subtract(0, 0, pivots, pivots + j, pivots, columns, false));
+    for (let k = lastPanel(pivots); k >= 0; k -= PANEL) {
+      const size = Math.min(PANEL, pivots - k);
+      this.fetch(front, k * order, size * order);
+      this.triangle(kernel.solveComplexUpper, k, order, k, size);
+      this.subtract(0, 0, order, k, k, size, false);
     }
   }
 
   /** w₁ ← U₁₁⁻ᴴ w₁, w₂ ← w₂ − U₁₂ᴴ w₁. */
   private forwardAdjoint(front: ComplexFrontFactor): void {
     const { order, pivots } = front;
-    for (let k = 0; k < pivots; k += TRIANGLE) {
-      const size = Math.min(TRIANGLE, pivots - k);
-      this.subtractAdjoint(this.rows(k), this.lower(front, 0, k), this.rows(0), size, k);
-      solveUpperAdjointInPlace(this.lower(front, k, k), this.rows(k), this.cols, size);
+    const { kernel } = this.workspace;
+    for (let k = 0; k < pivots; k += PANEL) {
+      const size = Math.min(PANEL, pivots - k);
+      this.fetch(front, k * order, size * order);
+      this.subtract(k, 0, order, 0, size, k, true);
+      this.triangle(kernel.solveComplexUpperAdjoint, k, order, k, size);
     }
-    this.subtractAdjoint(this.rows(pivots), this.upper(front), this.rows(0), order - pivots, pivots);
+    this.forUpper(front, (j, columns) => this.subtract(pivots + j, 0, pivots, 0, columns, pivots, true));
   }
 
   /** w₁ ← L₁₁⁻ᴴ (w₁ − L₂₁ᴴ w₂). */
   private backwardAdjoint(front: ComplexFrontFactor): void {
     const { order, pivots } = front;
-    for (let end = pivots; end > 0; end = end - 1 - ((end - 1) % TRIANGLE)) {
-      const k = end - 1 - ((end - 1) % TRIANGLE);
-      this.subtractAdjoint(this.rows(k), this.lower(front, end, k), this.rows(end), end - k, order - end);
-      solveUnitLowerAdjointInPlace(this.lower(front, k, k), this.rows(k), this.cols, end - k);
+    const { kernel } = this.workspace;
+    for (let k = lastPanel(pivots); k >= 0; k -= PANEL) {
+      const size = Math.min(PANEL, pivots - k);
+      this.fetch(front, k * order, size * order);
+      this.subtract(k, k + size, order, k + size, size, order - k - size, true);
+      this.triangle(kernel.solveComplexUnitLowerAdjoint, k, order, k, size);
     }
   }
 
-  private lower(front: ComplexFrontFactor, row: number, col: number): ComplexBlock {
-    return this.block(front, row + col * front.order, front.order);
+  /** Visits U₁₂ (pivots×rest), as many columns as fit the panel at a time. */
+  private forUpper(front: ComplexFrontFactor, visit: (first: number, columns: number) => void): void {
+    const { order, pivots } = front;
+    if (pivots === 0) return;
+    const most = Math.max(1, Math.floor((this.stride * PANEL) / pivots));
+    for (let j = 0; j < order - pivots; j += most) {
+      const columns = Math.min(most, order - pivots - j);
+      this.fetch(front, pivots * (order + j), pivots * columns);
+      visit(j, columns);
+    }
   }
 
-  private upper(front: ComplexFrontFactor): ComplexBlock {
-    return this.block(front, front.pivots * front.order, front.pivots);
+  /** Brings these entries of a factor into the panel. */
+  private fetch(front: ComplexFrontFactor, offset: number, entries: number): void {
+    const { doubles } = this.workspace;
+    const at = front.at + offset;
+    doubles.set(this.factor.re.array(front.chunk).subarray(at, at + entries), this.panelRe / 8);
+    doubles.set(this.factor.im.array(front.chunk).subarray(at, at + entries), this.panelIm / 8);
   }
 
-  private block(front: ComplexFrontFactor, offset: number, stride: number): ComplexBlock {
-    const { re, im } = this.factor;
-    return { re: re.array(front.chunk), im: im.array(front.chunk), at: front.at + offset, stride };
+  /** Solves for the local rows from `row` on with the triangle that starts in this row of the panel. */
+  private triangle(
+    solve: ComplexSolve,
+    panelRow: number,
+    panelStride: number,
+    row: number,
+    size: number,
+  ): void {
+    const { panelRe, panelIm, localRe, localIm, stride } = this;
+    const t = 8 * panelRow;
+    const x = 8 * row;
+    solve(panelRe + t, panelIm + t, panelStride, localRe + x, localIm + x, stride, this.cols, size);
   }
 
-  private rows(from: number): ComplexBlock {
-    return { re: this.local.re, im: this.local.im, at: from, stride: this.local.stride };
+  /** Local rows from `to` less op(panel) times local rows from `from`; op(panel) is m×k. */
+  private subtract(
+    to: number,
+    panelRow: number,
+    panelStride: number,
+    from: number,
+    m: number,
+    k: number,
+    adjoint: boolean,
+  ): void {
+    if (m === 0 || k === 0) return;
+    const { panelRe, panelIm, localRe, localIm, stride } = this;
+    const y = 8 * to;
+    const a = 8 * panelRow;
+    const x = 8 * from;
+    this.workspace.kernel.subtractComplex(
+      localRe + y,
+      localIm + y,
+      stride,
+      panelRe + a,
+      panelIm + a,
+      panelStride,
+      localRe + x,
+      localIm + x,
+      stride,
+      m,
+      this.cols,
+      k,
+      adjoint ? 1 : 0,
+    );
   }
+}
 
-  private subtract(y: ComplexBlock, a: ComplexBlock, x: ComplexBlock, m: number, k: number): void {
-    if (this.cols < PACKED_FROM) subtractThinProductInto(y, a, x, m, this.cols, k);
-    else subtractProductInto(y, a, x, m, this.cols, k, false);
-  }
-
-  private subtractAdjoint(y: ComplexBlock, a: ComplexBlock, x: ComplexBlock, m: number, k: number): void {
-    if (this.cols < PACKED_FROM) subtractThinAdjointProductInto(y, a, x, m, this.cols, k);
-    else subtractProductInto(y, a, x, m, this.cols, k, true);
-  }
+/** First column of the last panel, negative without any. */
+function lastPanel(pivots: number): number {
+  return pivots - 1 - ((pivots - 1) % PANEL);
 }

@@ -29,10 +29,3 @@ export class FactorStore {
     return this.chunks[chunk];
   }
 }
-
-/** A larger copy of the first `used` entries, with room for at least `needed`. */
-export function grown(array: Float64Array, used: number, needed: number): Float64Array {
-  const larger = new Float64Array(Math.max(needed, array.length + (array.length >> 1)));
-  larger.set(array.subarray(0, used));
-  return larger;
-}

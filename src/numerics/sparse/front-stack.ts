@@ -70,15 +70,16 @@ export function layOutFront(
 
 /**
  * Places, in the receiving front, of the rows of a child's update: its delayed rows from
- * `delayedAt` on, then the others by their dofs.
+ * `delayedAt` on, then the others by their dofs; they are written from `at` on.
  */
 export function updatePlacesInto(
   places: Int32Array,
+  at: number,
   child: EliminatedFront,
   delayedAt: number,
   placeOf: Int32Array,
 ): void {
   const { pivots, delayed, order, rowIds } = child;
-  for (let t = 0; t < delayed; t++) places[t] = delayedAt + t;
-  for (let t = pivots + delayed; t < order; t++) places[t - pivots] = placeOf[rowIds[t]];
+  for (let t = 0; t < delayed; t++) places[at + t] = delayedAt + t;
+  for (let t = pivots + delayed; t < order; t++) places[at + t - pivots] = placeOf[rowIds[t]];
 }

@@ -7,14 +7,14 @@
 
 import { invariant, NumericalError } from "../../errors.js";
 import type { DenseMatrix } from "../dense/matrix.js";
+import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { SymbolicAnalysis } from "./analysis.js";
 import type { SolveReport } from "./backward-error.js";
 import { equilibrationExponents } from "./equilibration.js";
-import { FactorStore, grown } from "./factor-store.js";
+import { FactorStore } from "./factor-store.js";
 import { childrenOf, type FrontLayout, layOutFront, updatePlacesInto } from "./front-stack.js";
 import { RealRefinement } from "./real-refinement.js";
 import type { SparseMatrix, SparsePattern } from "./sparse-matrix.js";
-import { eliminateSymmetricFront, type SymmetricFront } from "./symmetric-front.js";
 import { type SymmetricFactor, solveWithSymmetricFactor } from "./symmetric-substitution.js";
 
 /** Numbers of negative, zero and positive eigenvalues. */
@@ -57,7 +57,9 @@ export function factorSymmetric(
   const exponents = equilibrationExponents(pattern, moduli(values));
   const a: SparseMatrix = { ...pattern, values };
   const scaled = scaledValues(a, exponents);
-  const factor = new SymmetricMultifrontal(analysis, scaled.values).factor();
+  const factor = withWorkspace((workspace) =>
+    new SymmetricMultifrontal(analysis, scaled.values, workspace).factor(),
+  );
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const inertia = inertiaOf(
     factor,
@@ -133,28 +135,26 @@ function inertiaOf(factor: SymmetricFactor, tolerance: number): Inertia {
   return { negative, zero, positive };
 }
 
-/** One run over the tree of fronts. */
+/** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
 class SymmetricMultifrontal {
   private readonly analysis: SymbolicAnalysis;
   private readonly values: Float64Array;
+  private readonly workspace: Workspace;
   private readonly tiny: number;
   private readonly placeOf: Int32Array;
-  private places: Int32Array;
-  private front: Float64Array;
-  private stack: Float64Array;
-  private stackTop = 0;
+  /** First byte above the waiting updates. */
+  private top: number;
   private readonly factorOut: SymmetricFactor;
 
-  constructor(analysis: SymbolicAnalysis, values: Float64Array) {
-    const { largestFront, stackPeak, order, predictedNonzeros } = analysis;
+  constructor(analysis: SymbolicAnalysis, values: Float64Array, workspace: Workspace) {
+    const { order, predictedNonzeros } = analysis;
     this.analysis = analysis;
     this.values = values;
+    this.workspace = workspace;
+    this.top = workspace.begin;
     const largest = values.reduce((m, v) => Math.max(m, Math.abs(v)), 0);
     this.tiny = Number.EPSILON * (largest > 0 ? largest : 1);
     this.placeOf = new Int32Array(order);
-    this.places = new Int32Array(largestFront);
-    this.front = new Float64Array(largestFront * largestFront);
-    this.stack = new Float64Array(stackPeak);
     this.factorOut = {
       order,
       fronts: [],
@@ -165,83 +165,108 @@ class SymmetricMultifrontal {
   }
 
   factor(): SymmetricFactor {
-    const { analysis, factorOut } = this;
+    const { analysis, factorOut, workspace } = this;
     const children = childrenOf(analysis);
     for (let s = 0; s < analysis.fronts; s++) {
       const layout = layOutFront(analysis, s, children[s], factorOut.fronts, this.placeOf);
-      const front = this.assemble(s, layout, children[s]);
-      const isRoot = analysis.parent[s] < 0;
-      const { pivots, perturbed, diagonal } = eliminateSymmetricFront(front, { tiny: this.tiny, isRoot });
-      factorOut.perturbedPivots += perturbed;
-      this.keepFactor(front, pivots, diagonal);
-      this.push(front, pivots);
+      const front = this.placeFront(layout);
+      this.enterEntries(s, layout, front.values / 8);
+      const base = this.addUpdates(layout, children[s], front);
+      const pivots = this.eliminate(layout, front, analysis.parent[s] < 0);
+      factorOut.perturbedPivots += workspace.kernel.perturbedSymmetricPivots();
+      this.keepFactor(layout, front, pivots);
+      const size = layout.order - pivots;
+      workspace.kernel.packLower(base, front.values + 8 * pivots * (layout.order + 1), layout.order, size);
+      this.top = base + 8 * lowerEntries(size);
     }
     return factorOut;
   }
 
-  private assemble(s: number, layout: FrontLayout, children: Int32Array): SymmetricFront {
-    const { own, delayed, order, rowIds } = layout;
-    if (order * order > this.front.length) this.front = new Float64Array(order * order);
-    if (order > this.places.length) this.places = new Int32Array(order);
-    const { front } = this;
-    front.fill(0, 0, order * order);
+  private placeFront({ own, delayed, order }: FrontLayout): FrontPlace {
+    const { workspace } = this;
+    const values = this.top;
+    const diagonal = values + 8 * order * order;
+    const scratch = diagonal + 16 * (own + delayed);
+    const ids = scratch + 8 * workspace.kernel.symmetricScratch(order);
+    workspace.ensure(ids + 4 * order);
+    workspace.doubles.fill(0, values / 8, diagonal / 8);
+    return { values, diagonal, scratch, ids };
+  }
+
+  private enterEntries(s: number, { own, delayed, order }: FrontLayout, front: number): void {
     const { entryStart, entries, entryRow, entryCol } = this.analysis;
+    const { doubles } = this.workspace;
     for (let t = entryStart[s]; t < entryStart[s + 1]; t++) {
       if (entryRow[t] < entryCol[t]) continue;
       const i = entryRow[t] < own ? entryRow[t] : entryRow[t] + delayed;
       const j = entryCol[t] < own ? entryCol[t] : entryCol[t] + delayed;
-      front[i + j * order] = this.values[entries[t]];
+      doubles[front + i + j * order] = this.values[entries[t]];
     }
+  }
+
+  /** Adds the children's updates, the last of which lies on top; returns where the first begins. */
+  private addUpdates({ own, delayed, order }: FrontLayout, children: Int32Array, front: FrontPlace): number {
+    const { kernel, integers } = this.workspace;
     let delayedAt = own + delayed;
+    let begin = this.top;
     for (let t = children.length - 1; t >= 0; t--) {
-      delayedAt -= this.factorOut.fronts[children[t]].delayed;
-      this.popInto(order, children[t], delayedAt);
-    }
-    return { values: front, order, summed: own + delayed, ids: rowIds };
-  }
-
-  /** Adds the update of the child on top of the stack, lower triangle to lower triangle. */
-  private popInto(order: number, child: number, delayedAt: number): void {
-    const { places, front, stack } = this;
-    const eliminated = this.factorOut.fronts[child];
-    const size = eliminated.order - eliminated.pivots;
-    updatePlacesInto(places, eliminated, delayedAt, this.placeOf);
-    this.stackTop -= size * size;
-    for (let j = 0; j < size; j++) {
-      const column = places[j];
-      const from = this.stackTop + j * size;
+      const child = this.factorOut.fronts[children[t]];
+      const size = child.order - child.pivots;
+      delayedAt -= child.delayed;
+      begin -= 8 * lowerEntries(size);
+      updatePlacesInto(integers, front.ids / 4, child, delayedAt, this.placeOf);
       // Only a delayed column can stand behind rows that came after it.
-      const mayCross = j < eliminated.delayed;
-      for (let i = j; i < size; i++) {
-        const row = places[i];
-        const target = mayCross && row < column ? column + row * order : row + column * order;
-        front[target] += stack[from + i];
-      }
+      kernel.addLowerUpdate(front.values, order, begin, size, front.ids, child.delayed);
     }
+    return begin;
   }
 
-  private keepFactor(front: SymmetricFront, pivots: number, diagonal: Float64Array): void {
-    const { values, order, summed, ids } = front;
-    const { chunk, at } = this.factorOut.store.reserve(pivots * order);
-    this.factorOut.store.array(chunk).set(values.subarray(0, pivots * order), at);
+  private eliminate(
+    { own, delayed, order, rowIds }: FrontLayout,
+    front: FrontPlace,
+    isRoot: boolean,
+  ): number {
+    const { kernel, integers } = this.workspace;
+    const { values, ids, diagonal, scratch } = front;
+    integers.set(rowIds, ids / 4);
+    const summed = own + delayed;
+    const root = isRoot ? 1 : 0;
+    const pivots = kernel.eliminateSymmetric(values, order, summed, ids, diagonal, scratch, this.tiny, root);
+    rowIds.set(integers.subarray(ids / 4, ids / 4 + order));
+    return pivots;
+  }
+
+  private keepFactor(layout: FrontLayout, front: FrontPlace, pivots: number): void {
+    const { own, delayed, order, rowIds } = layout;
+    const { store, fronts } = this.factorOut;
+    const { doubles } = this.workspace;
+    const { chunk, at } = store.reserve(pivots * order);
+    store.array(chunk).set(doubles.subarray(front.values / 8, front.values / 8 + pivots * order), at);
+    const diagonal = doubles.slice(front.diagonal / 8, front.diagonal / 8 + 2 * pivots);
     this.factorOut.nonzeros += pivots * order - (pivots * (pivots - 1)) / 2;
-    const delayed = summed - pivots;
-    this.factorOut.fronts.push({ order, pivots, delayed, rowIds: ids, colIds: ids, chunk, at, diagonal });
+    fronts.push({
+      order,
+      pivots,
+      delayed: own + delayed - pivots,
+      rowIds,
+      colIds: rowIds,
+      chunk,
+      at,
+      diagonal,
+    });
   }
+}
 
-  private push(front: SymmetricFront, pivots: number): void {
-    const { values, order } = front;
-    const size = order - pivots;
-    const end = this.stackTop + size * size;
-    if (end > this.stack.length) this.stack = grown(this.stack, this.stackTop, end);
-    const { stack } = this;
-    for (let j = 0; j < size; j++) {
-      const from = pivots + (pivots + j) * order;
-      const to = this.stackTop + j * size;
-      for (let i = j; i < size; i++) stack[to + i] = values[from + i];
-    }
-    this.stackTop = end;
-  }
+/** Byte addresses of a front in the workspace. */
+interface FrontPlace {
+  readonly values: number;
+  readonly diagonal: number;
+  readonly scratch: number;
+  readonly ids: number;
+}
+
+function lowerEntries(size: number): number {
+  return (size * (size + 1)) / 2;
 }
 
 /** Sum of the squared pivot counts: what the columns of L hold beyond half of L and U. */

@@ -1,22 +1,15 @@
 /** Forward and back substitution with the LDLᵀ factors of all fronts, for a block of right-hand sides at once. */
 
 import type { DenseMatrix } from "../dense/matrix.js";
+import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { FactorStore } from "./factor-store.js";
 import type { EliminatedFront } from "./front-stack.js";
-import {
-  type RealBlock,
-  solveRealUnitLowerInPlace,
-  solveRealUnitLowerTransposedInPlace,
-  subtractRealProductInto,
-  subtractThinRealProductInto,
-  subtractThinRealTransposedProductInto,
-} from "./real-kernels.js";
 
 /** A front whose columns of L (order×pivots) start at `at` of the chunk. */
 export interface SymmetricFrontFactor extends EliminatedFront {
   readonly chunk: number;
   readonly at: number;
-  /** D, as in `SymmetricElimination`. */
+  /** D: at 2k the diagonal entry of pivot k, at 2k + 1 its coupling to pivot k + 1, 0 for a 1×1 pivot. */
   readonly diagonal: Float64Array;
 }
 
@@ -30,21 +23,17 @@ export interface SymmetricFactor {
 
 /** Right-hand sides taken through the tree together. */
 const BLOCK_COLUMNS = 64;
-/** From this many right-hand sides on, packing pays. */
-const PACKED_FROM = 6;
-/** Triangles are solved in blocks of this size. */
-const TRIANGLE = 24;
+/** Columns of a factor brought into the workspace at a time. */
+const PANEL = 24;
 
 /** X ← S (L D Lᵀ)⁻¹ S X with S = diag(scale); X is n×k. */
 export function solveWithSymmetricFactor(factor: SymmetricFactor, scale: Float64Array, x: DenseMatrix): void {
   const n = factor.order;
-  let largest = 0;
-  for (const front of factor.fronts) largest = Math.max(largest, front.order);
   for (let first = 0; first < x.cols; first += BLOCK_COLUMNS) {
     const cols = Math.min(BLOCK_COLUMNS, x.cols - first);
     const values = x.values.subarray(first * n, (first + cols) * n);
     scaleRows(scale, values, cols);
-    new Substitution(factor, largest, values, cols).solve();
+    withWorkspace((workspace) => new Substitution(factor, values, cols, workspace).solve());
     scaleRows(scale, values, cols);
   }
 }
@@ -55,18 +44,24 @@ function scaleRows(scale: Float64Array, values: Float64Array, cols: number): voi
 
 class Substitution {
   private readonly factor: SymmetricFactor;
+  private readonly workspace: Workspace;
   private readonly x: Float64Array;
   private readonly cols: number;
-  /** The rows of one front, gathered. */
-  private readonly local: Float64Array;
+  /** Rows of the largest front: distance between the columns of the local rows. */
   private readonly stride: number;
+  /** Byte addresses of the gathered rows of one front, and of the columns of its factor in use. */
+  private readonly local: number;
+  private readonly panel: number;
 
-  constructor(factor: SymmetricFactor, largest: number, x: Float64Array, cols: number) {
+  constructor(factor: SymmetricFactor, x: Float64Array, cols: number, workspace: Workspace) {
     this.factor = factor;
+    this.workspace = workspace;
     this.x = x;
     this.cols = cols;
-    this.stride = largest;
-    this.local = new Float64Array(largest * cols);
+    this.stride = factor.fronts.reduce((most, { order }) => Math.max(most, order), 0);
+    this.local = workspace.begin;
+    this.panel = this.local + 8 * this.stride * cols;
+    workspace.ensure(this.panel + 8 * this.stride * PANEL);
   }
 
   solve(): void {
@@ -85,56 +80,61 @@ class Substitution {
   }
 
   private gather({ rowIds, order }: SymmetricFrontFactor): void {
-    const { x, local, stride } = this;
+    const { x } = this;
+    const { doubles } = this.workspace;
     for (let c = 0; c < this.cols; c++) {
       const from = c * this.factor.order;
-      const to = c * stride;
-      for (let i = 0; i < order; i++) local[to + i] = x[from + rowIds[i]];
+      const to = this.local / 8 + c * this.stride;
+      for (let i = 0; i < order; i++) doubles[to + i] = x[from + rowIds[i]];
     }
   }
 
   private scatter({ rowIds }: SymmetricFrontFactor, rows: number): void {
-    const { x, local, stride } = this;
+    const { x } = this;
+    const { doubles } = this.workspace;
     for (let c = 0; c < this.cols; c++) {
       const to = c * this.factor.order;
-      const from = c * stride;
-      for (let i = 0; i < rows; i++) x[to + rowIds[i]] = local[from + i];
+      const from = this.local / 8 + c * this.stride;
+      for (let i = 0; i < rows; i++) x[to + rowIds[i]] = doubles[from + i];
     }
   }
 
   /** w₁ ← L₁₁⁻¹ w₁, w₂ ← w₂ − L₂₁ w₁. */
   private forward(front: SymmetricFrontFactor): void {
     const { order, pivots } = front;
-    for (let k = 0; k < pivots; k += TRIANGLE) {
-      const size = Math.min(TRIANGLE, pivots - k);
-      solveRealUnitLowerInPlace(this.lower(front, k, k), this.rows(k), this.cols, size);
+    const { panel, stride, cols } = this;
+    const { kernel } = this.workspace;
+    for (let k = 0; k < pivots; k += PANEL) {
+      const size = Math.min(PANEL, pivots - k);
       const next = k + size;
-      const below = this.lower(front, next, k);
-      if (this.cols < PACKED_FROM) {
-        subtractThinRealProductInto(this.rows(next), below, this.rows(k), order - next, this.cols, size);
-      } else {
-        subtractRealProductInto(this.rows(next), below, this.rows(k), order - next, this.cols, size, false);
-      }
+      const rows = this.rows(k);
+      this.fetch(front, k, size);
+      kernel.solveRealUnitLower(panel + 8 * k, order, rows, stride, cols, size);
+      if (next === order) continue;
+      const below = panel + 8 * next;
+      kernel.subtractReal(this.rows(next), stride, below, order, rows, stride, order - next, cols, size, 0);
     }
   }
 
   /** w₁ ← D⁻¹ w₁. */
   private divide({ pivots, diagonal }: SymmetricFrontFactor): void {
-    const { local, stride } = this;
+    const { stride } = this;
+    const { doubles } = this.workspace;
+    const local = this.local / 8;
     for (let k = 0; k < pivots; k++) {
       const a = diagonal[2 * k];
       const b = diagonal[2 * k + 1];
       if (b === 0) {
-        for (let c = 0, p = k; c < this.cols; c++, p += stride) local[p] /= a;
+        for (let c = 0, p = local + k; c < this.cols; c++, p += stride) doubles[p] /= a;
         continue;
       }
       const d = diagonal[2 * k + 2];
       const determinant = a * d - b * b;
-      for (let c = 0, p = k; c < this.cols; c++, p += stride) {
-        const y = local[p];
-        const z = local[p + 1];
-        local[p] = (d * y - b * z) / determinant;
-        local[p + 1] = (a * z - b * y) / determinant;
+      for (let c = 0, p = local + k; c < this.cols; c++, p += stride) {
+        const y = doubles[p];
+        const z = doubles[p + 1];
+        doubles[p] = (d * y - b * z) / determinant;
+        doubles[p + 1] = (a * z - b * y) / determinant;
       }
       k++;
     }
@@ -143,31 +143,29 @@ class Substitution {
   /** w₁ ← L₁₁⁻ᵀ (w₁ − L₂₁ᵀ w₂). */
   private backward(front: SymmetricFrontFactor): void {
     const { order, pivots } = front;
-    for (let end = pivots; end > 0; end = end - 1 - ((end - 1) % TRIANGLE)) {
-      const k = end - 1 - ((end - 1) % TRIANGLE);
-      const below = this.lower(front, end, k);
-      if (this.cols < PACKED_FROM) {
-        subtractThinRealTransposedProductInto(
-          this.rows(k),
-          below,
-          this.rows(end),
-          end - k,
-          this.cols,
-          order - end,
-        );
-      } else {
-        subtractRealProductInto(this.rows(k), below, this.rows(end), end - k, this.cols, order - end, true);
+    const { panel, stride, cols } = this;
+    const { kernel } = this.workspace;
+    for (let k = pivots - 1 - ((pivots - 1) % PANEL); k >= 0; k -= PANEL) {
+      const size = Math.min(PANEL, pivots - k);
+      const next = k + size;
+      const rows = this.rows(k);
+      this.fetch(front, k, size);
+      if (next < order) {
+        const below = panel + 8 * next;
+        kernel.subtractReal(rows, stride, below, order, this.rows(next), stride, size, cols, order - next, 1);
       }
-      solveRealUnitLowerTransposedInPlace(this.lower(front, k, k), this.rows(k), this.cols, end - k);
+      kernel.solveRealUnitLowerTransposed(panel + 8 * k, order, rows, stride, cols, size);
     }
   }
 
-  private lower(front: SymmetricFrontFactor, row: number, col: number): RealBlock {
-    const at = front.at + row + col * front.order;
-    return { values: this.factor.store.array(front.chunk), at, stride: front.order };
+  private rows(from: number): number {
+    return this.local + 8 * from;
   }
 
-  private rows(from: number): RealBlock {
-    return { values: this.local, at: from, stride: this.stride };
+  /** Brings whole columns of a factor into the panel. */
+  private fetch({ at, chunk, order }: SymmetricFrontFactor, first: number, columns: number): void {
+    const begin = at + first * order;
+    const entries = this.factor.store.array(chunk).subarray(begin, begin + columns * order);
+    this.workspace.doubles.set(entries, this.panel / 8);
   }
 }

@@ -1,0 +1,111 @@
+/**
+ * One source for every build: `V` is a vector of two doubles where the machine has them and a
+ * single double otherwise, and the compiler keeps the branch that fits.
+ */
+
+export function widthOf<V>(): i32 {
+  return isVector<V>() ? 2 : 1;
+}
+
+export function zero<V>(): V {
+  if (isVector<V>()) return f64x2.splat(0);
+  return <V>0;
+}
+
+export function splat<V>(x: f64): V {
+  if (isVector<V>()) return f64x2.splat(x);
+  return <V>x;
+}
+
+/** The double at this address in every lane. */
+export function splatAt<V>(at: usize): V {
+  if (isVector<V>()) return v128.load64_splat(at);
+  return load<V>(at);
+}
+
+export function add<V>(a: V, b: V): V {
+  if (isVector<V>()) return f64x2.add(a, b);
+  return <V>(a + b);
+}
+
+export function subtract<V>(a: V, b: V): V {
+  if (isVector<V>()) return f64x2.sub(a, b);
+  return <V>(a - b);
+}
+
+export function multiply<V>(a: V, b: V): V {
+  if (isVector<V>()) return f64x2.mul(a, b);
+  return <V>(a * b);
+}
+
+/** c + a b. */
+export function multiplyAdd<V>(a: V, b: V, c: V): V {
+  if (isVector<V>()) {
+    if (ASC_FEATURE_RELAXED_SIMD) return f64x2.relaxed_madd(a, b, c);
+    return f64x2.add(c, f64x2.mul(a, b));
+  }
+  return <V>(c + a * b);
+}
+
+/** c − a b. */
+export function multiplySubtract<V>(a: V, b: V, c: V): V {
+  if (isVector<V>()) {
+    if (ASC_FEATURE_RELAXED_SIMD) return f64x2.relaxed_nmadd(a, b, c);
+    return f64x2.sub(c, f64x2.mul(a, b));
+  }
+  return <V>(c - a * b);
+}
+
+/** The larger of each lane; a NaN in b is passed over. */
+export function larger<V>(a: V, b: V): V {
+  if (isVector<V>()) return f64x2.pmax(a, b);
+  // biome-ignore lint/complexity/useMathMinMax: a NaN in b must not come through
+  return a < b ? b : a;
+}
+
+/** The largest lane. */
+export function largestLane<V>(a: V): f64 {
+  if (isVector<V>()) {
+    const low = f64x2.extract_lane(a, 0);
+    const high = f64x2.extract_lane(a, 1);
+    return low < high ? high : low;
+  }
+  return <f64>a;
+}
+
+/** The sum of the lanes. */
+export function sumOfLanes<V>(a: V): f64 {
+  if (isVector<V>()) return f64x2.extract_lane(a, 0) + f64x2.extract_lane(a, 1);
+  return <f64>a;
+}
+
+/** Subtracts two neighbouring groups of lanes from memory, of whose doubles `left` exist. */
+export function subtractLanes<V>(at: usize, first: V, second: V, left: i32): void {
+  const width = widthOf<V>();
+  if (left >= 2 * width) {
+    store<V>(at, subtract<V>(load<V>(at), first));
+    store<V>(at + sizeof<V>(), subtract<V>(load<V>(at + sizeof<V>()), second));
+    return;
+  }
+  if (isVector<V>()) {
+    if (left > 0) store<f64>(at, load<f64>(at) - f64x2.extract_lane(first, 0));
+    if (left > 1) store<f64>(at, load<f64>(at, 8) - f64x2.extract_lane(first, 1), 8);
+    if (left > 2) store<f64>(at, load<f64>(at, 16) - f64x2.extract_lane(second, 0), 16);
+  } else {
+    store<V>(at, subtract<V>(load<V>(at), first));
+  }
+}
+
+/** The modulus of every lane. */
+export function magnitude<V>(a: V): V {
+  if (isVector<V>()) return f64x2.abs(a);
+  return <V>abs<f64>(<f64>a);
+}
+
+/** The `left` doubles from `from` on, then zeros, `count` in all. */
+export function copyPadded(to: usize, from: usize, left: i32, count: i32): void {
+  for (let t = 0; t < count; t++) {
+    const at = (<usize>t) << 3;
+    store<f64>(to + at, t < left ? load<f64>(from + at) : 0);
+  }
+}
