@@ -1,7 +1,8 @@
 import type { DensePencil } from "../reduction/reduced-model.js";
 import { levelCrossings } from "./level-set.js";
 import type { Setting } from "./measure.js";
-import { gainFunction, polishPeak } from "./peaks.js";
+import { gainFunction } from "./peaks.js";
+import { polishPeak } from "./polish-peak.js";
 import { spectralForm } from "./spectral-form.js";
 
 /**

@@ -1,15 +1,8 @@
 import { type ComplexMatrix, complexZeros } from "../numerics/dense/matrix.js";
 import { largestSingularValue } from "../numerics/dense/svd.js";
 import type { Band } from "./band.js";
+import { type Peak, polishPeak } from "./polish-peak.js";
 import { ownPeak, type SpectralForm, transferInto } from "./transfer.js";
-
-/** A local maximum of σ_max(H(iω)) over the band. */
-export interface Peak {
-  /** [rad/s] */
-  readonly omega: number;
-  /** Infinity when the gain grows without bound towards infinite frequency; `omega` is just far up then. */
-  readonly sigma: number;
-}
 
 export interface PeakOptions {
   /** Poles whose own peak is below this share of the highest are not polished. Default 0.2. */
@@ -23,9 +16,6 @@ export interface PeakOptions {
 }
 
 export const peakDefaults: PeakOptions = { screen: 0.2, keep: 0.5, extra: [], accuracy: 1e-9 };
-
-/** Heights closer than this, relative, differ by rounding only. */
-const sameHeight = 1e-15;
 
 /** σ_max(H(iω)) as a function; owns its workspace. */
 export function gainFunction(form: SpectralForm): (omega: number) => number {
@@ -44,96 +34,51 @@ export function gainFunction(form: SpectralForm): (omega: number) => number {
  */
 export function findPeaks(form: SpectralForm, band: Band, options: PeakOptions = peakDefaults): Peak[] {
   if (form.inputs === 0 || form.outputs === 0) return [];
-  const gain = gainFunction(form);
+  const gain = remembering(gainFunction(form));
   const grid = startGrid(form, gain, band, options);
-  const sigma = grid.map(gain);
+  const sigma = grid.map(({ omega }) => gain(omega));
   const highest = sigma.reduce((high, s) => Math.max(high, s), 0);
   const peaks: Peak[] = [];
   for (let k = 0; k < grid.length; k++) {
     const left = k === 0 ? Number.NEGATIVE_INFINITY : sigma[k - 1];
     const right = k === grid.length - 1 ? Number.NEGATIVE_INFINITY : sigma[k + 1];
     if (sigma[k] < 0.8 * options.keep * highest || sigma[k] < left || sigma[k] < right) continue;
-    const low = grid[Math.max(0, k - 1)];
-    const high = grid[Math.min(grid.length - 1, k + 1)];
-    peaks.push(polishPeak(gain, low, grid[k], high, sigma[k], options.accuracy));
+    const { omega, width } = grid[k];
+    const low = grid[Math.max(0, k - 1)].omega;
+    const high = grid[Math.min(grid.length - 1, k + 1)].omega;
+    const room = 0.25 * (high - low);
+    const step = width > 0 ? Math.min(0.5 * width, room) : room;
+    peaks.push(polishPeak(gain, low, omega, high, sigma[k], { accuracy: options.accuracy, step }));
   }
   const last = grid.length - 1;
-  if (!Number.isFinite(band.high) && sigma[last] > 0 && growsWithoutBound(gain, grid[last], sigma[last])) {
-    return [{ omega: grid[last], sigma: Number.POSITIVE_INFINITY }];
+  if (
+    !Number.isFinite(band.high) &&
+    sigma[last] > 0 &&
+    growsWithoutBound(gain, grid[last].omega, sigma[last])
+  ) {
+    return [{ omega: grid[last].omega, sigma: Number.POSITIVE_INFINITY }];
   }
   peaks.sort((a, b) => b.sigma - a.sigma);
   const top = peaks[0]?.sigma ?? 0;
   return distinct(peaks.filter((peak) => peak.sigma >= options.keep * top));
 }
 
+/** The same function, which answers a frequency asked for again from memory: start points coincide with poles looked at. */
+function remembering(gain: (omega: number) => number): (omega: number) => number {
+  const known = new Map<number, number>();
+  return (omega) => {
+    let value = known.get(omega);
+    if (value === undefined) {
+      value = gain(omega);
+      known.set(omega, value);
+    }
+    return value;
+  };
+}
+
 /** Whether a gain still grows like ω between ω/1000 and ω, where every finite pole lies far below. */
 export function growsWithoutBound(gain: (omega: number) => number, omega: number, sigma: number): boolean {
   return sigma > 500 * gain(1e-3 * omega);
-}
-
-/**
- * Local maximum in [low, high] that is no lower than at `start`, by parabolic steps safeguarded
- * with golden sections.
- *
- * Source: Brent, Algorithms for Minimization without Derivatives, 1973, ch. 5.
- */
-// biome-ignore lint/complexity/noExcessiveCognitiveComplexity: Brent's method is one small state machine
-export function polishPeak(
-  gain: (omega: number) => number,
-  low: number,
-  start: number,
-  high: number,
-  sigmaAtStart: number,
-  accuracy: number = peakDefaults.accuracy,
-): Peak {
-  const golden = 0.381966011250105;
-  let a = low;
-  let b = high;
-  let x = start;
-  let w = start;
-  let v = start;
-  let fx = sigmaAtStart;
-  let fw = fx;
-  let fv = fx;
-  let step = 0;
-  let before = 0;
-  for (let iteration = 0; iteration < 60; iteration++) {
-    const middle = 0.5 * (a + b);
-    const tolerance = accuracy * Math.abs(x) + 1e-300;
-    if (Math.abs(x - middle) <= 2 * tolerance - 0.5 * (b - a)) break;
-    const parabolic = parabolicStep(x, fx, w, fw, v, fv);
-    const useful =
-      Math.abs(parabolic) < Math.abs(0.5 * before) &&
-      x + parabolic > a &&
-      x + parabolic < b &&
-      parabolic !== 0;
-    before = useful ? step : x >= middle ? a - x : b - x;
-    step = useful ? parabolic : golden * before;
-    const u = x + (Math.abs(step) >= tolerance ? step : step >= 0 ? tolerance : -tolerance);
-    const fu = gain(u);
-    if (fu >= fx) {
-      if (u >= x) a = x;
-      else b = x;
-      [v, fv, w, fw, x, fx] = [w, fw, x, fx, u, fu];
-    } else {
-      if (u < x) a = u;
-      else b = u;
-      if (fu >= fw || w === x) [v, fv, w, fw] = [w, fw, u, fu];
-      else if (fu >= fv || v === x || v === w) [v, fv] = [u, fu];
-    }
-  }
-  // Between equal heights the iteration wanders off by a rounding error; ω = 0 is to stay ω = 0.
-  return fx > sigmaAtStart * (1 + sameHeight)
-    ? { omega: x, sigma: fx }
-    : { omega: start, sigma: sigmaAtStart };
-}
-
-/** Step from x to the vertex of the parabola through the three points; 0 when there is none. */
-function parabolicStep(x: number, fx: number, w: number, fw: number, v: number, fv: number): number {
-  const r = (x - w) * (fx - fv);
-  const q = (x - v) * (fx - fw);
-  const denominator = 2 * (q - r);
-  return denominator === 0 ? 0 : -((x - v) * q - (x - w) * r) / denominator;
 }
 
 /** Without an upper end of the band the gain is looked at up to here, over the furthest pole: its limit at infinity. */
@@ -169,7 +114,7 @@ function startGrid(
   gain: (omega: number) => number,
   band: Band,
   { screen, extra }: PeakOptions,
-): number[] {
+): Mark[] {
   const { poles, kept } = form;
   const matters = polesThatMatter(form, gain, band, screen);
   const marks: Mark[] = [band.low, ...extra].map((omega) => ({ omega, width: 0 }));
@@ -204,18 +149,20 @@ const apart = 8;
  * The marks in order with points between them: the middle, and the quarters where resonances blend, for there the
  * gain peaks between the poles too.
  */
-function subdivided(marks: readonly Mark[]): number[] {
+function subdivided(marks: readonly Mark[]): Mark[] {
   const sorted = [...marks].sort((a, b) => a.omega - b.omega);
-  const grid: number[] = [];
-  sorted.forEach(({ omega, width }, k) => {
+  const grid: Mark[] = [];
+  sorted.forEach((mark, k) => {
+    const { omega, width } = mark;
     const previous = sorted[k - 1];
     if (previous !== undefined) {
       const gap = omega - previous.omega;
       if (gap <= 0) return;
       const parts = gap < apart * Math.max(width, previous.width) ? 4 : 2;
-      for (let part = 1; part < parts; part++) grid.push(previous.omega + (gap * part) / parts);
+      for (let part = 1; part < parts; part++)
+        grid.push({ omega: previous.omega + (gap * part) / parts, width: 0 });
     }
-    grid.push(omega);
+    grid.push(mark);
   });
   return grid;
 }
