@@ -1,3 +1,6 @@
+import { afterAll, beforeAll, describe } from "vitest";
+import { KERNEL_NAMES } from "../../src/numerics/kernels/kernel.js";
+import { useKernel } from "../../src/numerics/kernels/workspace.js";
 import { createRandom } from "../../src/numerics/random.js";
 import { fromTriplets, type SparseMatrix } from "../../src/numerics/sparse/sparse-matrix.js";
 
@@ -212,4 +215,15 @@ export function tiedPlateCase(side: number, ties: number): SparseCase {
   const order = n + ties;
   const tied = fromTriplets(order, order, rows, cols, re);
   return { name: "tied plate", a: tied, im: fromTriplets(order, order, rows, cols, imaginary).values };
+}
+
+/** The same tests once with each build of the kernels. */
+export function describeWithEveryKernel(what: string, body: () => void): void {
+  for (const kernel of KERNEL_NAMES) {
+    describe(`${what}, ${kernel} kernel`, () => {
+      beforeAll(() => useKernel(kernel));
+      afterAll(() => useKernel());
+      body();
+    });
+  }
 }

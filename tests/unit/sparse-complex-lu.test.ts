@@ -1,9 +1,16 @@
-import { describe, expect, it } from "vitest";
+import { expect, it } from "vitest";
 import type { ComplexMatrix } from "../../src/numerics/dense/matrix.js";
 import { analyse } from "../../src/numerics/sparse/analysis.js";
 import { factorComplex } from "../../src/numerics/sparse/complex-lu.js";
 import { fromTriplets } from "../../src/numerics/sparse/sparse-matrix.js";
-import { awkwardCase, plateCase, type SparseCase, tiedPlateCase, uniform } from "./sparse-cases.js";
+import {
+  awkwardCase,
+  describeWithEveryKernel,
+  plateCase,
+  type SparseCase,
+  tiedPlateCase,
+  uniform,
+} from "./sparse-cases.js";
 
 type Complex = [number, number];
 const times = ([a, b]: Complex, [c, d]: Complex): Complex => [a * c - b * d, a * d + b * c];
@@ -91,7 +98,7 @@ function denseBackwardError(matrix: Complex[][], x: ComplexMatrix, b: ComplexMat
 const adjointOf = (matrix: Complex[][]): Complex[][] =>
   matrix.map((_, i) => matrix.map((row): Complex => [row[i]![0], -row[i]![1]]));
 
-describe("complex LU of awkward random matrices", () => {
+describeWithEveryKernel("complex LU of awkward random matrices", () => {
   const seeds = Array.from({ length: 350 }, (_, s) => s + 1);
 
   it("solves with a backward error below 1e-14, for one and for many right-hand sides", () => {
@@ -161,7 +168,7 @@ const single = (re: number, im: number) =>
     im: Float64Array.of(im),
   });
 
-describe("complex LU of degenerate matrices", () => {
+describeWithEveryKernel("complex LU of degenerate matrices", () => {
   it("takes an empty matrix", () => {
     const empty = fromTriplets(0, 0, [], [], []);
     const factorisation = factorComplex(analyse(empty), empty, {
@@ -265,7 +272,7 @@ describe("complex LU of degenerate matrices", () => {
   });
 });
 
-describe("complex LU of a plate with 2700 dofs and 400 ties", () => {
+describeWithEveryKernel("complex LU of a plate with 2700 dofs and 400 ties", () => {
   it("delays pivots of the ties to later fronts and keeps the backward error below 1e-14", () => {
     const { a, im } = tiedPlateCase(30, 400);
     const analysis = analyse(a);
@@ -279,7 +286,7 @@ describe("complex LU of a plate with 2700 dofs and 400 ties", () => {
   });
 });
 
-describe("complex LU of a plate with 10 092 dofs", () => {
+describeWithEveryKernel("complex LU of a plate with 10 092 dofs", () => {
   it("stays within 2.2 million entries and solves both ways with a backward error below 1e-14", () => {
     const problem = plateCase(58, 3);
     const factorisation = factorCase(problem, problem.groups);

@@ -1,9 +1,9 @@
 import { EigenvalueDecomposition, Matrix } from "ml-matrix";
-import { describe, expect, it } from "vitest";
+import { expect, it } from "vitest";
 import { analyse } from "../../src/numerics/sparse/analysis.js";
 import { fromTriplets, multiplyAddInto, type SparseMatrix } from "../../src/numerics/sparse/sparse-matrix.js";
 import { factorSymmetric } from "../../src/numerics/sparse/symmetric-ldl.js";
-import { awkwardCase, plateCase, tiedPlateCase, uniform } from "./sparse-cases.js";
+import { awkwardCase, describeWithEveryKernel, plateCase, tiedPlateCase, uniform } from "./sparse-cases.js";
 
 const seeds = Array.from({ length: 350 }, (_, s) => s + 1);
 
@@ -22,7 +22,7 @@ function rightSides(n: number, cols: number, seed: number) {
   return { rows: n, cols, values: new Float64Array(n * cols).map(() => 2 * random() - 1) };
 }
 
-describe("LDLᵀ of awkward random matrices", () => {
+describeWithEveryKernel("LDLᵀ of awkward random matrices", () => {
   it("solves with a backward error below 1e-14, for one and for many right-hand sides", () => {
     let refinements = 0;
     for (const seed of seeds) {
@@ -75,7 +75,7 @@ describe("LDLᵀ of awkward random matrices", () => {
   });
 });
 
-describe("LDLᵀ of degenerate matrices", () => {
+describeWithEveryKernel("LDLᵀ of degenerate matrices", () => {
   it("takes an empty matrix", () => {
     expect(factor(fromTriplets(0, 0, [], [], [])).inertia).toEqual({ negative: 0, zero: 0, positive: 0 });
   });
@@ -111,7 +111,7 @@ describe("LDLᵀ of degenerate matrices", () => {
   });
 });
 
-describe("LDLᵀ of a plate", () => {
+describeWithEveryKernel("LDLᵀ of a plate", () => {
   it("solves 10 092 dofs with a backward error below 1e-14", () => {
     const { a, groups } = plateCase(58, 3);
     const b = rightSides(a.rows, 3, 4);

@@ -59,6 +59,7 @@ export interface KernelFunctions {
     crossing: number,
   ): void;
   packSquare(to: number, from: number, stride: number, size: number): void;
+  packRows(to: number, from: number, stride: number, rows: number, columns: number): void;
   packLower(to: number, from: number, stride: number, size: number): void;
   subtractComplex: ComplexProduct;
   solveComplexUnitLower: ComplexSolve;

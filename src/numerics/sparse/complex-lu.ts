@@ -53,10 +53,9 @@ export function factorComplex(
   invariant(analysis.order === pattern.cols, "factorComplex: the pattern is not the one analysed");
   invariant(values.re.length === entries && values.im.length === entries, "factorComplex: a value per entry");
   const exponents = equilibrationExponents(pattern, moduli(values));
-  const factor = withWorkspace((workspace) =>
-    new ComplexMultifrontal(analysis, scaledValues(pattern, values, exponents), workspace).factor(),
-  );
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
+  const scaled = scaledValues(pattern, values, scale);
+  const factor = withWorkspace((workspace) => new ComplexMultifrontal(analysis, scaled, workspace).factor());
   const determinant = determinantOf(factor, exponents);
   const refinement = new ComplexRefinement(pattern, values, scale);
   const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport =>
@@ -72,10 +71,11 @@ export function factorComplex(
   };
 }
 
+/** Moduli as far as scaling needs them: the larger part of each entry. */
 function moduli({ re, im }: ComplexValues): Float64Array {
   const modulus = new Float64Array(re.length);
   for (let p = 0; p < re.length; p++) {
-    modulus[p] = Math.hypot(re[p], im[p]);
+    modulus[p] = Math.max(Math.abs(re[p]), Math.abs(im[p]));
     if (!Number.isFinite(modulus[p])) {
       throw new NumericalError(
         "numerics.not-finite",
@@ -87,13 +87,13 @@ function moduli({ re, im }: ComplexValues): Float64Array {
   return modulus;
 }
 
-function scaledValues(pattern: SparsePattern, values: ComplexValues, exponents: Int32Array): ComplexValues {
+function scaledValues(pattern: SparsePattern, values: ComplexValues, scale: Float64Array): ComplexValues {
   const { cols, colStart, rowIndex } = pattern;
   const re = new Float64Array(rowIndex.length);
   const im = new Float64Array(rowIndex.length);
   for (let j = 0; j < cols; j++) {
     for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-      const factor = 2 ** (exponents[rowIndex[p]] + exponents[j]);
+      const factor = scale[rowIndex[p]] * scale[j];
       re[p] = values.re[p] * factor;
       im[p] = values.im[p] * factor;
     }
@@ -216,20 +216,27 @@ class ComplexMultifrontal {
   }
 
   /** Stores the pivot columns of L and U₁₁ and the pivot rows of U beyond them. */
-  private keepFactor(
-    { own, delayed, order, rowIds, colIds }: FrontLayout,
-    front: FrontPlace,
-    pivots: number,
-  ): void {
+  private keepFactor(layout: FrontLayout, front: FrontPlace, pivots: number): void {
+    const { own, delayed, order, rowIds, colIds } = layout;
     const { re, im, fronts } = this.factorOut;
-    const { doubles } = this.workspace;
     const size = pivots * (2 * order - pivots);
     const { chunk, at } = re.reserve(size);
     im.reserve(size);
-    copyPivotPart(re.array(chunk), at, doubles, front.re / 8, order, pivots);
-    copyPivotPart(im.array(chunk), at, doubles, front.im / 8, order, pivots);
+    this.copyPivotPart(re.array(chunk), at, front.re, order, pivots);
+    this.copyPivotPart(im.array(chunk), at, front.im, order, pivots);
     this.factorOut.nonzeros += size;
     fronts.push({ order, pivots, delayed: own + delayed - pivots, rowIds, colIds, chunk, at });
+  }
+
+  /** The first columns of a front, then the first rows of the others. */
+  private copyPivotPart(to: Float64Array, at: number, front: number, order: number, pivots: number): void {
+    const { kernel, doubles } = this.workspace;
+    const columns = pivots * order;
+    to.set(doubles.subarray(front / 8, front / 8 + columns), at);
+    // What has been copied makes room to gather the rows, as there are no more of them.
+    const rows = pivots * (order - pivots);
+    kernel.packRows(front, front + 8 * columns, order, pivots, order - pivots);
+    to.set(doubles.subarray(front / 8, front / 8 + rows), at + columns);
   }
 
   /** Moves the update down to `base`, over the children's that it contains. */
@@ -249,22 +256,6 @@ interface FrontPlace {
   readonly im: number;
   readonly rowIds: number;
   readonly colIds: number;
-}
-
-/** The first columns of a front, then the first rows of the others. */
-function copyPivotPart(
-  to: Float64Array,
-  at: number,
-  from: Float64Array,
-  front: number,
-  order: number,
-  pivots: number,
-): void {
-  to.set(from.subarray(front, front + pivots * order), at);
-  let q = at + pivots * order;
-  for (let j = pivots; j < order; j++) {
-    for (let p = front + j * order; p < front + j * order + pivots; p++, q++) to[q] = from[p];
-  }
 }
 
 /** det A = det(L U) / det(D)² times the sign of the permutation from pivot rows to pivot columns. */

@@ -14,6 +14,11 @@ import {
   type SolveReport,
   STAGNATION,
 } from "./backward-error.js";
+import {
+  SHARED_COLUMNS,
+  subtractAdjointProductInto,
+  subtractProductInto,
+} from "./complex-sparse-products.js";
 import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
 
 /** Infinity norms of A and Aᴴ. */
@@ -54,6 +59,7 @@ export class ComplexRefinement {
     apply(b);
     const residual = complexZeros(b.rows, b.cols);
     const error = new Float64Array(b.cols);
+    this.residualInto(residual, b, given, Array.from(error.keys()), adjoint);
     for (let c = 0; c < b.cols; c++) error[c] = this.columnError(residual, b, given, c, adjoint);
     let open = columnsAbove(error);
     let refinements = 0;
@@ -82,11 +88,15 @@ export class ComplexRefinement {
       copyColumn(before, t, x, open[t]);
     }
     apply(correction);
-    return open.filter((c, t) => {
+    for (let t = 0; t < open.length; t++) {
+      const shift = open[t] * n;
       for (let i = 0; i < n; i++) {
-        x.re[i + c * n] += correction.re[i + t * n];
-        x.im[i + c * n] += correction.im[i + t * n];
+        x.re[i + shift] += correction.re[i + t * n];
+        x.im[i + shift] += correction.im[i + t * n];
       }
+    }
+    this.residualInto(residual, x, b, open, adjoint);
+    return open.filter((c, t) => {
       const old = error[c];
       error[c] = this.columnError(residual, x, b, c, adjoint);
       if (error[c] >= old) {
@@ -98,7 +108,7 @@ export class ComplexRefinement {
     });
   }
 
-  /** Leaves the residual in its column and returns the backward error. */
+  /** Backward error of a column from its residual. */
   private columnError(
     residual: ComplexMatrix,
     x: ComplexMatrix,
@@ -106,9 +116,6 @@ export class ComplexRefinement {
     c: number,
     adjoint: boolean,
   ): number {
-    copyColumn(residual, c, b, c);
-    if (adjoint) this.subtractAdjointProduct(residual, x, c);
-    else this.subtractProduct(residual, x, c);
     const { ones, scale, inverseScale } = this;
     const side = adjoint ? "adjoint" : "plain";
     const normX = columnNorm(x, c, ones);
@@ -130,37 +137,19 @@ export class ComplexRefinement {
     return Math.max(error, scaledError);
   }
 
-  private subtractProduct(r: ComplexMatrix, x: ComplexMatrix, c: number): void {
-    const { cols, rows, colStart, rowIndex } = this.pattern;
-    const { re: aRe, im: aIm } = this.values;
-    const { re: rRe, im: rIm } = r;
-    const shift = c * rows;
-    for (let j = 0; j < cols; j++) {
-      const xr = x.re[shift + j];
-      const xi = x.im[shift + j];
-      for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-        const i = shift + rowIndex[p];
-        rRe[i] -= aRe[p] * xr - aIm[p] * xi;
-        rIm[i] -= aRe[p] * xi + aIm[p] * xr;
-      }
-    }
-  }
-
-  private subtractAdjointProduct(r: ComplexMatrix, x: ComplexMatrix, c: number): void {
-    const { cols, rows, colStart, rowIndex } = this.pattern;
-    const { re: aRe, im: aIm } = this.values;
-    const { re: xRe, im: xIm } = x;
-    const shift = c * rows;
-    for (let j = 0; j < cols; j++) {
-      let sumRe = 0;
-      let sumIm = 0;
-      for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-        const i = shift + rowIndex[p];
-        sumRe += aRe[p] * xRe[i] + aIm[p] * xIm[i];
-        sumIm += aRe[p] * xIm[i] - aIm[p] * xRe[i];
-      }
-      r.re[shift + j] -= sumRe;
-      r.im[shift + j] -= sumIm;
+  /** R ← B − A X, or B − Aᴴ X, in these columns; several share one pass over the matrix. */
+  private residualInto(
+    residual: ComplexMatrix,
+    x: ComplexMatrix,
+    b: ComplexMatrix,
+    columns: readonly number[],
+    adjoint: boolean,
+  ): void {
+    const { pattern, values } = this;
+    for (const c of columns) copyColumn(residual, c, b, c);
+    const subtract = adjoint ? subtractAdjointProductInto : subtractProductInto;
+    for (let t = 0; t < columns.length; t += SHARED_COLUMNS) {
+      subtract(residual, pattern, values, x, columns.slice(t, t + SHARED_COLUMNS));
     }
   }
 }

@@ -14,7 +14,10 @@ import {
   type SolveReport,
   STAGNATION,
 } from "./backward-error.js";
-import { multiplyAddInto, type SparseMatrix } from "./sparse-matrix.js";
+import { multiplyTransposedAddInto, type SparseMatrix } from "./sparse-matrix.js";
+
+/** Columns that share a pass over the matrix. */
+const SHARED_COLUMNS = 4;
 
 export class RealRefinement {
   private readonly a: SparseMatrix;
@@ -49,6 +52,9 @@ export class RealRefinement {
     apply(b);
     const residual = zeros(b.rows, b.cols);
     const error = new Float64Array(b.cols);
+    for (let c = 0; c < b.cols; c += SHARED_COLUMNS) {
+      this.residualInto(residual, b, given, c, Math.min(SHARED_COLUMNS, b.cols - c));
+    }
     for (let c = 0; c < b.cols; c++) error[c] = this.columnError(residual, b, given, c);
     let open = Array.from(error.keys()).filter((c) => error[c] > BACKWARD_ERROR_GOAL);
     let refinements = 0;
@@ -77,6 +83,7 @@ export class RealRefinement {
       const step = column(correction, t);
       for (let i = 0; i < xc.length; i++) xc[i] += step[i];
       const old = error[c];
+      this.residualInto(residual, x, b, c, 1);
       error[c] = this.columnError(residual, x, b, c);
       if (error[c] >= old) {
         xc.set(before);
@@ -87,11 +94,24 @@ export class RealRefinement {
     });
   }
 
-  /** Leaves the residual in its column and returns the backward error. */
+  /** R ← B − A X in these columns; A is its own transpose, so nothing need be scattered. */
+  private residualInto(
+    residual: DenseMatrix,
+    x: DenseMatrix,
+    b: DenseMatrix,
+    first: number,
+    count: number,
+  ): void {
+    const columns = Array.from({ length: count }, (_, t) => column(x, first + t));
+    const sums = columns.map((_, t) => column(residual, first + t));
+    for (let t = 0; t < count; t++) sums[t].set(column(b, first + t));
+    if (count === SHARED_COLUMNS) subtractFour(this.a, columns, sums);
+    else for (let t = 0; t < count; t++) multiplyTransposedAddInto(sums[t], -1, this.a, columns[t]);
+  }
+
+  /** Backward error of a column from its residual. */
   private columnError(residual: DenseMatrix, x: DenseMatrix, b: DenseMatrix, c: number): number {
     const r = column(residual, c);
-    r.set(column(b, c));
-    multiplyAddInto(r, -1, this.a, column(x, c));
     const { ones, scale, inverseScale } = this;
     const normX = maxNorm(column(x, c), ones);
     const normB = maxNorm(column(b, c), ones);
@@ -110,6 +130,32 @@ export class RealRefinement {
       );
     }
     return Math.max(error, scaledError);
+  }
+}
+
+/** Y ← Y − Aᵀ X for four columns in one pass over the matrix. */
+function subtractFour(
+  { cols, colStart, rowIndex, values }: SparseMatrix,
+  [x0, x1, x2, x3]: readonly Float64Array[],
+  [y0, y1, y2, y3]: readonly Float64Array[],
+): void {
+  for (let j = 0; j < cols; j++) {
+    let s0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    let s3 = 0;
+    for (let p = colStart[j]; p < colStart[j + 1]; p++) {
+      const i = rowIndex[p];
+      const a = values[p];
+      s0 += a * x0[i];
+      s1 += a * x1[i];
+      s2 += a * x2[i];
+      s3 += a * x3[i];
+    }
+    y0[j] -= s0;
+    y1[j] -= s1;
+    y2[j] -= s2;
+    y3[j] -= s3;
   }
 }
 

@@ -55,12 +55,12 @@ export function factorSymmetric(
   invariant(analysis.order === pattern.cols, "factorSymmetric: the pattern is not the one analysed");
   invariant(values.length === pattern.rowIndex.length, "factorSymmetric: a value per entry");
   const exponents = equilibrationExponents(pattern, moduli(values));
+  const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const a: SparseMatrix = { ...pattern, values };
-  const scaled = scaledValues(a, exponents);
+  const scaled = scaledValues(a, scale);
   const factor = withWorkspace((workspace) =>
     new SymmetricMultifrontal(analysis, scaled.values, workspace).factor(),
   );
-  const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const inertia = inertiaOf(
     factor,
     ZERO_PIVOT_EPSILONS * Number.EPSILON * (scaled.norm > 0 ? scaled.norm : 1),
@@ -76,28 +76,31 @@ export function factorSymmetric(
 }
 
 function moduli(values: Float64Array): Float64Array {
-  const bad = values.findIndex((v) => !Number.isFinite(v));
-  if (bad >= 0) {
-    throw new NumericalError(
-      "numerics.not-finite",
-      `entry ${bad} of the matrix to be factored is ${values[bad]}`,
-      "Look for a formula or matrix file that gives infinite or undefined values.",
-    );
+  const modulus = new Float64Array(values.length);
+  for (let p = 0; p < values.length; p++) {
+    modulus[p] = Math.abs(values[p]);
+    if (!Number.isFinite(modulus[p])) {
+      throw new NumericalError(
+        "numerics.not-finite",
+        `entry ${p} of the matrix to be factored is ${values[p]}`,
+        "Look for a formula or matrix file that gives infinite or undefined values.",
+      );
+    }
   }
-  return values.map(Math.abs);
+  return modulus;
 }
 
 /** S A S in the order of the pattern, and its infinity norm. */
 function scaledValues(
   a: SparseMatrix,
-  exponents: Int32Array,
+  scale: Float64Array,
 ): { readonly values: Float64Array; readonly norm: number } {
   const values = new Float64Array(a.values.length);
   let norm = 0;
   for (let j = 0; j < a.cols; j++) {
     let sum = 0;
     for (let p = a.colStart[j]; p < a.colStart[j + 1]; p++) {
-      values[p] = a.values[p] * 2 ** (exponents[a.rowIndex[p]] + exponents[j]);
+      values[p] = a.values[p] * (scale[a.rowIndex[p]] * scale[j]);
       sum += Math.abs(values[p]);
     }
     norm = Math.max(norm, sum);
@@ -152,7 +155,8 @@ class SymmetricMultifrontal {
     this.values = values;
     this.workspace = workspace;
     this.top = workspace.begin;
-    const largest = values.reduce((m, v) => Math.max(m, Math.abs(v)), 0);
+    let largest = 0;
+    for (let p = 0; p < values.length; p++) largest = Math.max(largest, Math.abs(values[p]));
     this.tiny = Number.EPSILON * (largest > 0 ? largest : 1);
     this.placeOf = new Int32Array(order);
     this.factorOut = {

@@ -50,3 +50,13 @@ export function packLower(to: usize, from: usize, stride: i32, size: i32): void 
     from += (<usize>(stride + 1)) << 3;
   }
 }
+
+/** Gathers the first `rows` rows of these columns at `to`, which lies before `from`. */
+export function packRows(to: usize, from: usize, stride: i32, rows: i32, columns: i32): void {
+  const bytes = (<usize>rows) << 3;
+  for (let j = 0; j < columns; j++) {
+    for (let i: usize = 0; i < bytes; i += 8) store<f64>(to + i, load<f64>(from + i));
+    to += bytes;
+    from += (<usize>stride) << 3;
+  }
+}

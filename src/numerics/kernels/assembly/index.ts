@@ -6,7 +6,7 @@ import { FREE } from "./layout";
 import * as real from "./real-triangles";
 import { eliminateSymmetric as symmetricFront } from "./symmetric-front";
 
-export { addLowerUpdate, addSquareUpdate, packLower, packSquare } from "./assembling";
+export { addLowerUpdate, addSquareUpdate, packLower, packRows, packSquare } from "./assembling";
 export { perturbedPivots } from "./complex-front";
 export { perturbedSymmetricPivots, symmetricScratch } from "./symmetric-front";
 

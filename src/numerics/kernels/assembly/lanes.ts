@@ -59,16 +59,13 @@ export function multiplySubtract<V>(a: V, b: V, c: V): V {
 /** The larger of each lane; a NaN in b is passed over. */
 export function larger<V>(a: V, b: V): V {
   if (isVector<V>()) return f64x2.pmax(a, b);
-  // biome-ignore lint/complexity/useMathMinMax: a NaN in b must not come through
   return a < b ? b : a;
 }
 
 /** The largest lane. */
 export function largestLane<V>(a: V): f64 {
   if (isVector<V>()) {
-    const low = f64x2.extract_lane(a, 0);
-    const high = f64x2.extract_lane(a, 1);
-    return low < high ? high : low;
+    return max<f64>(f64x2.extract_lane(a, 0), f64x2.extract_lane(a, 1));
   }
   return <f64>a;
 }
