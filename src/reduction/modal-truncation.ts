@@ -33,12 +33,27 @@ export function truncateModes(pencil: DensePencil, omega: number): DensePencil {
     values: vectors.values.slice(first * vectors.rows),
   };
   solveLowerTransposedInPlace(lower, modes);
+  // The modes make E the identity, so mass and stiffness are known: diagonal.
+  const order = modes.cols;
+  const mass = zeros(order, order);
+  const stiffness = zeros(order, order);
+  for (let i = 0; i < order; i++) {
+    mass.values[i * (order + 1)] = values[first + i];
+    stiffness.values[i * (order + 1)] = 1 - sigma * values[first + i];
+  }
+  const { displacementMatrix } = pencil;
+  const circulatory = {
+    ...stiffnessMatrix,
+    values: displacementMatrix.values.map((value, q) => value - stiffnessMatrix.values[q]),
+  };
   const project = (a: DenseMatrix) => multiplyTransposed(modes, multiply(a, modes));
+  const displacement = project(circulatory);
+  for (let i = 0; i < order; i++) displacement.values[i * (order + 1)] += stiffness.values[i * (order + 1)];
   return densePencil(
-    project(pencil.massMatrix),
+    mass,
     project(pencil.velocityMatrix),
-    project(pencil.displacementMatrix),
-    project(pencil.stiffnessMatrix),
+    displacement,
+    stiffness,
     multiplyTransposed(modes, pencil.inputMatrix),
     pencil.powers,
     multiplyTransposed(modes, pencil.outputTransposedMatrix),

@@ -153,7 +153,7 @@ function passColumn(
   zNext[j] = sum;
 }
 
-/** Qᵀ by columns (row i of Q stands at `i * n`), from what `reduceToHessenberg` left. */
+/** Qᵀ by columns (row i of Q stands at `i * n`), from what `reduceToHessenberg`, or a tridiagonalisation, left. */
 export function hessenbergBasis(a: Float64Array, n: number, tau: Float64Array): Float64Array {
   const q = new Float64Array(n * n);
   for (let i = 0; i < n; i++) q[i + i * n] = 1;
