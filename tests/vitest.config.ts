@@ -13,11 +13,6 @@ export default defineConfig({
       { extends: true, test: { name: "end-to-end", include: ["tests/end-to-end/**/*.test.ts"], exclude } },
       // Minutes to hours: `npm run test:long`.
       { extends: true, test: { name: "long", include: [long] } },
-      // `npm run bench`.
-      {
-        extends: true,
-        test: { name: "bench", include: [], benchmark: { include: ["tests/benchmarks/**/*.bench.ts"] } },
-      },
     ],
   },
 });

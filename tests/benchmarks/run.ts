@@ -1,0 +1,156 @@
+/**
+ * `npm run bench -- [options]`: what solves of the full model cost beside native codes, and what the parts of
+ * `margin` and `tune` cost. Every row is a child process, so that memory and compiled code are its own.
+ */
+
+import { spawnSync } from "node:child_process";
+import { mkdtempSync, rmSync } from "node:fs";
+import { availableParallelism, cpus, freemem, loadavg, tmpdir } from "node:os";
+import { join } from "node:path";
+import { parseArgs } from "node:util";
+import { writeArrays } from "./exchange.js";
+import { benchmarkModel, gridOf, type Shape } from "./models.js";
+import { BLOCK, type Outcome } from "./row.js";
+import { type NamedOutcome, solverTable } from "./table.js";
+
+const usage = `npm run bench -- [options]
+  --models LIST    shape and thousands of dofs (default plate10,slab10,cube10,plate30,slab30,cube30)
+  --large          adds plate100, slab100, cube100 and, without peers, plate1000
+  --kernels LIST   of fma,simd,plain (default all)
+  --no-peers       leaves out SuperLU and UMFPACK
+  --no-ring-brake  leaves out the second table
+  --limit-s N      stops a row after so many seconds (default 300)
+  --seed N         of the models (default 1)
+`;
+
+const { values: options } = parseArgs({
+  allowNegative: true,
+  options: {
+    models: { type: "string", default: "plate10,slab10,cube10,plate30,slab30,cube30" },
+    large: { type: "boolean", default: false },
+    kernels: { type: "string", default: "fma,simd,plain" },
+    peers: { type: "boolean", default: true },
+    "ring-brake": { type: "boolean", default: true },
+    "limit-s": { type: "string", default: "300" },
+    seed: { type: "string", default: "1" },
+    help: { type: "boolean", default: false },
+  },
+});
+const here = (file: string): string => new URL(file, import.meta.url).pathname;
+/** This file runs from dist/tests/benchmarks. */
+const peersScript = here("../../../peers.py");
+/** Children beyond this leave the machine to others. */
+const ADDRESS_SPACE = Math.floor(0.8 * freemem());
+const LARGEST_FOR_PEERS = 100_000;
+const peerNames = new Map([
+  ["superlu", "SuperLU (MMD)"],
+  ["umfpack", "UMFPACK (METIS)"],
+]);
+
+function main(): void {
+  const models = `${options.models}${options.large ? ",plate100,slab100,cube100,plate1000" : ""}`
+    .split(",")
+    .map(parseModel);
+  print(
+    `${cpus()[0]?.model}, ${availableParallelism()} cores, load ${loadavg()[0]?.toFixed(1)}, Node ${process.version}\n`,
+  );
+  for (const { shape, dofs } of models) {
+    print(`\n${shape} of ${gridOf(shape, dofs).join(" × ")} nodes, 3 dofs each, seed ${options.seed}\n`);
+    print(solverTable([...ownRows(shape, dofs), ...peerRows(shape, dofs)]));
+  }
+  print(`\n${legend}`);
+  if (options["ring-brake"]) {
+    print("\n");
+    spawnSync(process.execPath, [here("ring-brake.js")], { stdio: "inherit" });
+  }
+}
+
+const legend = `ordering  ordering and symbolic analysis, first call
+factor    least of up to five runs, and how far the slowest lay above it; ÷ ours: over the first row
+solve 1, solve ${BLOCK}  per right-hand side, alone and in a block of ${BLOCK}; least of up to five
+memory    factors and work space by the solver's own account; resident: rise of peak memory during the work
+LU fill   stored entries of L and U;  backward error: computed here alike for all, infinity norms
+All on one thread, in processor seconds; real and complex operations both counted as real ones.
+`;
+
+function parseModel(text: string): { shape: Shape; dofs: number } {
+  const match = /^(plate|slab|cube)(\d+)$/.exec(text);
+  if (match === null) throw new Error(`"${text}" is no model; say for example plate10 or slab30.\n${usage}`);
+  return { shape: match[1] as Shape, dofs: 1000 * Number(match[2]) };
+}
+
+function ownRows(shape: Shape, dofs: number): NamedOutcome[] {
+  const run = (kernel: string, kind: string): Outcome =>
+    childOutcome(process.execPath, [here("measure.js"), shape, `${dofs}`, options.seed, kind], {
+      DAMPWRIGHT_KERNEL: kernel,
+    });
+  const kernels = options.kernels.split(",");
+  return [
+    ...kernels.map((kernel) => ({
+      name: `ours, ${kernel}`,
+      comparable: true,
+      outcome: run(kernel, "complex"),
+    })),
+    ...kernels.map((kernel) => ({
+      name: `real LDLᵀ, ${kernel}`,
+      comparable: false,
+      outcome: run(kernel, "symmetric"),
+    })),
+  ];
+}
+
+function peerRows(shape: Shape, dofs: number): NamedOutcome[] {
+  if (!options.peers) return [];
+  const named = (outcome: (peer: string) => Outcome): NamedOutcome[] =>
+    [...peerNames].map(([peer, name]) => ({ name, comparable: true, outcome: outcome(peer) }));
+  if (dofs > LARGEST_FOR_PEERS) return named(() => ({ absent: `not run beyond ${LARGEST_FOR_PEERS} dofs` }));
+  const folder = mkdtempSync(join(tmpdir(), "dampwright-bench-"));
+  try {
+    const file = join(folder, "matrix");
+    const { pattern, dynamic } = benchmarkModel(shape, dofs, Number(options.seed));
+    const sizes = Int32Array.of(pattern.cols, pattern.rowIndex.length);
+    writeArrays(file, [sizes, pattern.colStart, pattern.rowIndex, dynamic.re, dynamic.im]);
+    return named((peer) => peerOutcome([peersScript, peer, file, `${BLOCK}`, `${ADDRESS_SPACE}`]));
+  } finally {
+    rmSync(folder, { recursive: true });
+  }
+}
+
+/** The first Python that has what the peer needs; Debian's may stand behind another one. */
+function peerOutcome(args: string[]): Outcome {
+  const environment = {
+    OPENBLAS_NUM_THREADS: "1",
+    OMP_NUM_THREADS: "1",
+    OPENBLAS_CORETYPE: undefined,
+    OPENBLAS_L2_SIZE: undefined,
+  };
+  const first = childOutcome("python3", args, environment);
+  if (!("absent" in first) || !first.absent.includes("No module")) return first;
+  const second = childOutcome("/usr/bin/python3", args, environment);
+  return "absent" in second ? first : second;
+}
+
+function childOutcome(
+  program: string,
+  args: string[],
+  environment: Record<string, string | undefined>,
+): Outcome {
+  const { status, signal, stdout, stderr, error } = spawnSync(program, args, {
+    env: { ...process.env, ...environment },
+    encoding: "utf8",
+    timeout: 1000 * Number(options["limit-s"]),
+    killSignal: "SIGKILL",
+  });
+  if (error !== undefined && signal !== null) return { absent: `stopped after ${options["limit-s"]} s` };
+  if (error !== undefined) return { absent: `${program}: ${error.message}` };
+  if (status !== 0)
+    return { absent: `ended with ${signal ?? status}: ${stderr.trim().split("\n").slice(-1)}` };
+  return JSON.parse(stdout);
+}
+
+function print(text: string): void {
+  process.stdout.write(text);
+}
+
+if (options.help) print(usage);
+else main();
