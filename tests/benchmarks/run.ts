@@ -75,7 +75,10 @@ All on one thread, in processor seconds; real and complex operations both counte
 
 function parseModel(text: string): { shape: Shape; dofs: number } {
   const match = /^(plate|slab|cube)(\d+)$/.exec(text);
-  if (match === null) throw new Error(`"${text}" is no model; say for example plate10 or slab30.\n${usage}`);
+  if (match === null) {
+    process.stderr.write(`"${text}" is no model; say for example plate10 or slab30.\n${usage}`);
+    process.exit(2);
+  }
   return { shape: match[1] as Shape, dofs: 1000 * Number(match[2]) };
 }
 
@@ -142,10 +145,16 @@ function childOutcome(
     killSignal: "SIGKILL",
   });
   if (error !== undefined && signal !== null) return { absent: `stopped after ${options["limit-s"]} s` };
-  if (error !== undefined) return { absent: `${program}: ${error.message}` };
-  if (status !== 0)
-    return { absent: `ended with ${signal ?? status}: ${stderr.trim().split("\n").slice(-1)}` };
+  if (error !== undefined)
+    return { absent: `${program}: ${/ENOENT/.test(error.message) ? "not found" : error.message}` };
+  if (status !== 0) return { absent: `ended with ${signal ?? status}: ${saidAbout(stderr)}` };
   return JSON.parse(stdout);
+}
+
+/** The line that names the error, among traces of Node or Python. */
+function saidAbout(stderr: string): string {
+  const lines = stderr.trim().split("\n");
+  return (lines.findLast((line) => /^\w*Error\b/.test(line)) ?? lines[lines.length - 1]).slice(0, 200);
 }
 
 function print(text: string): void {

@@ -1,4 +1,4 @@
-/** Compiles the benchmark with the sources it measures, puts the files beside them that they read, and runs it. */
+/** Compiles the benchmark with the sources it measures (types are for `npm run check`), puts the files beside them that they read, and runs it. */
 
 import { execFileSync } from "node:child_process";
 import { cpSync } from "node:fs";
