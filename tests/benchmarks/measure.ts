@@ -13,7 +13,7 @@ import { createRandom } from "../../src/numerics/random.js";
 import { analyse, type SymbolicAnalysis } from "../../src/numerics/sparse/analysis.js";
 import { factorComplex } from "../../src/numerics/sparse/complex-lu.js";
 import { factorSymmetric } from "../../src/numerics/sparse/symmetric-ldl.js";
-import { type BenchmarkModel, benchmarkModel, type Shape } from "./models.js";
+import { type BenchmarkModel, benchmarkModel, shapeNamed } from "./models.js";
 import { complexBackwardError } from "./residual.js";
 import { BLOCK, type Row } from "./row.js";
 
@@ -138,6 +138,8 @@ function peakResident(): number {
   return 1024 * process.resourceUsage().maxRSS;
 }
 
-const [shape, dofs, seed, kind] = process.argv.slice(2);
-const model = benchmarkModel(shape as Shape, Number(dofs), Number(seed));
+const [name, dofs, seed, kind] = process.argv.slice(2);
+const shape = shapeNamed(name);
+if (shape === undefined) throw new Error(`no shape is called ${name}`);
+const model = benchmarkModel(shape, Number(dofs), Number(seed));
 process.stdout.write(JSON.stringify(kind === "symmetric" ? symmetricRow(model) : complexRow(model)));

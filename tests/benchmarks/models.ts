@@ -14,6 +14,12 @@ import { hexahedron, square } from "./elements.js";
 
 export type Shape = "plate" | "slab" | "cube";
 
+const shapes: readonly Shape[] = ["plate", "slab", "cube"];
+
+export function shapeNamed(name: string | undefined): Shape | undefined {
+  return shapes.find((shape) => shape === name);
+}
+
 export interface BenchmarkModel {
   readonly pattern: SparsePattern;
   /** Node of each dof. */

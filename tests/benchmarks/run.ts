@@ -9,7 +9,7 @@ import { availableParallelism, cpus, freemem, loadavg, tmpdir } from "node:os";
 import { join } from "node:path";
 import { parseArgs } from "node:util";
 import { writeArrays } from "./exchange.js";
-import { benchmarkModel, gridOf, type Shape } from "./models.js";
+import { benchmarkModel, gridOf, type Shape, shapeNamed } from "./models.js";
 import { BLOCK, type Outcome } from "./row.js";
 import { type NamedOutcome, solverTable } from "./table.js";
 
@@ -74,12 +74,13 @@ All on one thread, in processor seconds; real and complex operations both counte
 `;
 
 function parseModel(text: string): { shape: Shape; dofs: number } {
-  const match = /^(plate|slab|cube)(\d+)$/.exec(text);
-  if (match === null) {
+  const match = /^([a-z]+)([1-9]\d*)$/.exec(text);
+  const shape = shapeNamed(match?.[1]);
+  if (shape === undefined) {
     process.stderr.write(`"${text}" is no model; say for example plate10 or slab30.\n${usage}`);
     process.exit(2);
   }
-  return { shape: match[1] as Shape, dofs: 1000 * Number(match[2]) };
+  return { shape, dofs: 1000 * Number(match?.[2]) };
 }
 
 function ownRows(shape: Shape, dofs: number): NamedOutcome[] {

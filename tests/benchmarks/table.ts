@@ -29,8 +29,8 @@ const headings = [
 
 /** Aligned lines, one a solver; those that could not run say why. */
 export function solverTable(rows: readonly NamedOutcome[]): string {
-  const base = rows.map((row) => row.outcome).find((outcome) => !("absent" in outcome));
-  return aligned([headings, ...rows.map((row) => cells(row, base as Row | undefined))]);
+  const base = rows.flatMap(({ outcome }) => ("absent" in outcome ? [] : [outcome]))[0];
+  return aligned([headings, ...rows.map((row) => cells(row, base))]);
 }
 
 function cells({ name, outcome, comparable }: NamedOutcome, base: Row | undefined): string[] {
