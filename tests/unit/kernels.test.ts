@@ -1,10 +1,12 @@
 import { afterEach, describe, expect, it, vi } from "vitest";
 import { NumericalError } from "../../src/errors.js";
+import { hostBlas } from "../../src/numerics/kernels/host-blas.js";
 import {
   chosenKernel,
   KERNEL_NAMES,
   KERNEL_VARIABLE,
   type KernelName,
+  startKernel,
 } from "../../src/numerics/kernels/kernel.js";
 import { Workspace, withWorkspace } from "../../src/numerics/kernels/workspace.js";
 import { createRandom } from "../../src/numerics/random.js";
@@ -29,7 +31,12 @@ describe("the choice of a kernel", () => {
   it("refuses a name that it does not know and lists those that it does", () => {
     process.env[KERNEL_VARIABLE] = "abacus";
     expect(() => chosenKernel()).toThrow(/DAMPWRIGHT_KERNEL.*"abacus"/);
-    expect(() => chosenKernel()).toThrow(/fma, simd, plain/);
+    expect(() => chosenKernel()).toThrow(/fma, simd, plain, blas/);
+  });
+
+  it("names what is missing when the machine's own library is asked for in vain", () => {
+    if (hostBlas() === null) expect(() => startKernel("blas")).toThrow(/OpenBLAS.*koffi/);
+    else expect(startKernel("blas").name).toBe("blas");
   });
 
   it("falls back to JavaScript where WebAssembly is switched off", async () => {

@@ -3,20 +3,30 @@
  *
  * - `fma`: WebAssembly with fused multiply-add (relaxed SIMD),
  * - `simd`: WebAssembly with vectors of two doubles,
- * - `plain`: the same source as JavaScript, for machines without WebAssembly vectors.
+ * - `plain`: the same source as JavaScript, for machines without WebAssembly vectors,
+ * - `blas`: the best of these, with large products done by an OpenBLAS of the machine.
  *
- * The environment variable `DAMPWRIGHT_KERNEL` forces one; otherwise the first that the
- * machine accepts is taken.
+ * The environment variable `DAMPWRIGHT_KERNEL` forces one; otherwise the first of `fma`, `simd`
+ * and `plain` that the machine accepts is taken.
  */
 
 import { readFileSync } from "node:fs";
 import { createRequire } from "node:module";
 import { setFlagsFromString } from "node:v8";
 import { InputError } from "../../errors.js";
+import {
+  hostBlas,
+  nothingOutside,
+  OUTSIDE_FROM,
+  type OutsideProducts,
+  outsideProducts,
+} from "./host-blas.js";
 
-export type KernelName = "fma" | "simd" | "plain";
+export type KernelName = "fma" | "simd" | "plain" | "blas";
 
+/** The builds that need nothing from the machine, best first. */
 export const KERNEL_NAMES: readonly KernelName[] = ["fma", "simd", "plain"];
+const ALL_NAMES: readonly KernelName[] = [...KERNEL_NAMES, "blas"];
 
 export const KERNEL_VARIABLE = "DAMPWRIGHT_KERNEL";
 
@@ -26,6 +36,7 @@ export const KERNEL_VARIABLE = "DAMPWRIGHT_KERNEL";
  */
 export interface KernelFunctions {
   firstFree(): number;
+  setOutsideFrom(size: number): void;
   eliminateComplex(
     re: number,
     im: number,
@@ -143,46 +154,65 @@ const PLAIN_PAGES = 32_767;
 
 /** Starts this build on a memory of its own. @throws InputError when the machine refuses it. */
 export function startKernel(name: KernelName): StartedKernel {
-  if (name === "plain") return startPlain();
+  if (name === "blas") return startWithBlas();
+  if (name === "plain") return startPlain(() => nothingOutside);
   const module = compiled(name);
-  if (module === null) {
-    throw InputError.of(
-      "kernel.refused",
-      KERNEL_VARIABLE,
-      `this machine refuses the kernel "${name}"`,
-      `Leave ${KERNEL_VARIABLE} unset, or set it to "plain".`,
-    );
-  }
+  if (module === null) throw refusal(name, `Leave ${KERNEL_VARIABLE} unset, or set it to "plain".`);
+  return startModule(name, module, () => nothingOutside);
+}
+
+/** What a kernel imports, from the memory that it will have. */
+type Outside = (memory: () => ArrayBufferLike) => OutsideProducts;
+
+function startModule(name: KernelName, module: WebAssembly.Module, outside: Outside): StartedKernel {
   const memory = new WebAssembly.Memory({ initial: FIRST_PAGES, maximum: WASM_PAGES });
-  const instance = new WebAssembly.Instance(module, { env: { memory } });
+  const host = outside(() => memory.buffer);
+  const instance = new WebAssembly.Instance(module, { env: { memory }, host });
   const functions = instance.exports as unknown as KernelFunctions;
   return { name, functions, memory, mostPages: WASM_PAGES };
 }
 
-function startPlain(): StartedKernel {
+function startPlain(outside: Outside): StartedKernel {
   const instantiate: (imports: object) => KernelFunctions = createRequire(import.meta.url)(
     "./built/kernels.plain.cjs",
   );
   // The build adds `grow` and exchanges the buffer.
   const memory = { buffer: new ArrayBuffer(FIRST_PAGES * PAGE) } as unknown as KernelMemory;
-  const functions = instantiate({ env: { memory } });
+  const functions = instantiate({ env: { memory }, host: outside(() => memory.buffer) });
   return { name: "plain", functions, memory, mostPages: PLAIN_PAGES };
+}
+
+function startWithBlas(): StartedKernel {
+  const blas = hostBlas();
+  if (blas === null) {
+    throw refusal("blas", "Install an OpenBLAS and the npm package koffi, or choose another kernel.");
+  }
+  const outside: Outside = (memory) => outsideProducts(blas.product, memory);
+  const module = compiled("fma") ?? compiled("simd");
+  const started = module === null ? startPlain(outside) : startModule("blas", module, outside);
+  started.functions.setOutsideFrom(OUTSIDE_FROM);
+  return { ...started, name: "blas" };
+}
+
+function refusal(name: KernelName, hint: string): InputError {
+  return InputError.of("kernel.refused", KERNEL_VARIABLE, `this machine refuses the kernel "${name}"`, hint);
 }
 
 /** The build to use: the one asked for, or the first that starts. */
 export function chosenKernel(): KernelName {
   const asked = process.env[KERNEL_VARIABLE];
   if (asked !== undefined && asked !== "") {
-    const name = KERNEL_NAMES.find((known) => known === asked);
+    const name = ALL_NAMES.find((known) => known === asked);
     if (name !== undefined) return name;
     throw InputError.of(
       "kernel.unknown",
       KERNEL_VARIABLE,
       `there is no kernel "${asked}"`,
-      `Set it to one of ${KERNEL_NAMES.join(", ")}, or leave it unset.`,
+      `Set it to one of ${ALL_NAMES.join(", ")}, or leave it unset.`,
     );
   }
-  return KERNEL_NAMES.find((name) => name === "plain" || compiled(name) !== null) ?? "plain";
+  if (compiled("fma") !== null) return "fma";
+  return compiled("simd") === null ? "plain" : "simd";
 }
 
 const modules = new Map<KernelName, WebAssembly.Module | null>();

@@ -6,8 +6,8 @@
  * 2003 (replacing tiny pivots).
  */
 
-import { subtractComplexProduct } from "./complex-product";
 import { solveComplexUnitLower } from "./complex-triangles";
+import { subtractLargeComplexProduct } from "./host";
 import { larger, largestLane, multiply, multiplyAdd, multiplySubtract, splat, widthOf, zero } from "./lanes";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
@@ -359,7 +359,7 @@ function bringUpToDate<V>(begin: i32, pivoted: i32, from: i32, to: i32): void {
   const right = (<usize>(begin + from * order)) << 3;
   solveComplexUnitLower<V>(re + lower, im + lower, order, re + right, im + right, order, columns, k);
   const rows = (<usize>k) << 3;
-  subtractComplexProduct<V>(
+  subtractLargeComplexProduct<V>(
     re + right + rows,
     im + right + rows,
     order,
@@ -372,6 +372,5 @@ function bringUpToDate<V>(begin: i32, pivoted: i32, from: i32, to: i32): void {
     order - pivoted,
     columns,
     k,
-    false,
   );
 }

@@ -8,6 +8,7 @@ import { eliminateSymmetric as symmetricFront } from "./symmetric-front";
 
 export { addLowerUpdate, addSquareUpdate, packLower, packRows, packSquare } from "./assembling";
 export { perturbedPivots } from "./complex-front";
+export { setOutsideFrom } from "./host";
 export { perturbedSymmetricPivots, symmetricScratch } from "./symmetric-front";
 
 /** First byte that the caller may use. */

@@ -7,8 +7,8 @@
  * largest entry always yields a pivot).
  */
 
+import { subtractLargeRealProduct } from "./host";
 import { larger, largestLane, magnitude, widthOf, zero } from "./lanes";
-import { subtractRealProduct } from "./real-product";
 import { subtractOne } from "./real-triangles";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
@@ -296,7 +296,7 @@ function bringUpToDate<V>(begin: i32, pivoted: i32, from: i32, to: i32): void {
   for (let j = from; j < to; j += UPDATE_COLUMNS) {
     const columns = min(UPDATE_COLUMNS, to - j);
     scaleRows(begin, k, j, columns);
-    subtractRealProduct<V>(at(j, j), order, at(j, begin), order, scaled, k, order - j, columns, k, false);
+    subtractLargeRealProduct<V>(at(j, j), order, at(j, begin), order, scaled, k, order - j, columns, k);
   }
 }
 
