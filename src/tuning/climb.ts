@@ -1,6 +1,7 @@
-import { type Critical, sizeOf } from "../margin/measure.js";
+import { sizeOf } from "../margin/measure.js";
 import { type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
-import type { Session } from "./session.js";
+import { Follower } from "./follower.js";
+import type { Followed, Session } from "./session.js";
 
 /** A design as the reduced model sees it. */
 export interface Candidate {
@@ -88,7 +89,8 @@ async function ascend(
 ): Promise<number[]> {
   const { designs } = session;
   const first = designs.valuesOf(start);
-  const slots = points.map((at) => slotFrequencies(session.estimate(first, at).criticals));
+  const followers = points.map((at) => new Follower(session, at));
+  const slots = followers.map((follower) => slotFrequencies(follower.at(start, first).criticals));
   const free = start.map((_, i) => i).filter((i) => !options.frozen.has(i));
   if (free.length === 0) return [...start];
   const spread = (z: readonly number[]) => {
@@ -105,8 +107,8 @@ async function ascend(
     evaluate: (z) => {
       const x = spread(z);
       const design = designs.valuesOf(x);
-      const pieces = points.flatMap((at, k) => {
-        const { value, criticals } = session.estimate(design, at);
+      const pieces = followers.flatMap((follower, k) => {
+        const { value, criticals } = follower.at(x, design);
         return piecesOf(slots[k], criticals, value);
       });
       return { pieces, limits: designs.limitsAt(x) };
@@ -131,13 +133,13 @@ function evaluationsOf(dimension: number, tolerance: number): number {
   return (dimension + 1) * (18 + 6 * decades);
 }
 
-function slotFrequencies(criticals: readonly Critical[]): number[] {
+function slotFrequencies(criticals: Followed["criticals"]): number[] {
   const chosen = criticals.slice(0, slotsPerPoint).map((critical) => critical.omega);
   return chosen.length === 0 ? [0] : chosen;
 }
 
 /** The smallest value among the criticals nearest to each slot; a slot without any takes the largest of all. */
-function piecesOf(slots: readonly number[], criticals: readonly Critical[], value: number): number[] {
+function piecesOf(slots: readonly number[], criticals: Followed["criticals"], value: number): number[] {
   const pieces = new Array<number>(slots.length).fill(Number.POSITIVE_INFINITY);
   let largest = value;
   for (const critical of criticals) {

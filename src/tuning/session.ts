@@ -1,11 +1,19 @@
 import { FullModel } from "../fullorder/full-model.js";
+import { followPeaks } from "../margin/follow-peaks.js";
 import type { Estimate, Measure, Setting } from "../margin/measure.js";
 import { type PeakOptions, peakDefaults } from "../margin/peaks.js";
 import { measureOf, settingOf, statesAt } from "../margin/point-margin.js";
-import { buildModel, type ParametricModel, stateAt, type Values } from "../model/parametric-model.js";
+import {
+  buildModel,
+  type ModelState,
+  type ParametricModel,
+  stateAt,
+  type Values,
+} from "../model/parametric-model.js";
 import type { Problem, TermGroup } from "../problem/problem.js";
 import { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { truncateModes } from "../reduction/modal-truncation.js";
+import type { DensePencil } from "../reduction/reduced-model.js";
 import { DesignSpace } from "./design-space.js";
 import { type OperatingPoint, OperatingSpace, type Resolution } from "./operating-space.js";
 
@@ -15,6 +23,12 @@ export interface Progress {
   readonly done: number;
   /** null when unknown. */
   readonly total: number | null;
+}
+
+/** What is told of a design by following peaks: the smallest value, and all followed, smallest first. */
+export interface Followed {
+  readonly value: number;
+  readonly criticals: readonly { readonly value: number; readonly omega: number }[];
 }
 
 export type ReportProgress = (progress: Progress) => void;
@@ -57,11 +71,32 @@ export class Session {
   estimate(design: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>): Estimate {
     this.reducedEvaluations++;
     const states = statesAt(this.model, this.valuesAt(design, at));
-    const pencilAt = (multiplier: number) => {
-      const pencil = this.adaptive.reducedAt(states(multiplier));
-      return this.#searchReach === null ? pencil : truncateModes(pencil, this.#searchReach);
-    };
+    const pencilAt = (multiplier: number) => this.#searchPencil(states(multiplier));
     return this.measure.estimate(pencilAt, { ...this.setting, peaks: searchPeaks });
+  }
+
+  /**
+   * Values of known peaks at a design and operating point close to where they were found, far cheaper than an
+   * estimate; null when they cannot be followed there (`followPeaks`).
+   */
+  follow(
+    design: ReadonlyMap<string, number>,
+    at: ReadonlyMap<string, number>,
+    known: readonly number[],
+  ): Followed | null {
+    const pencil = this.#searchPencil(statesAt(this.model, this.valuesAt(design, at))(1));
+    const peaks = followPeaks(pencil, known, this.setting.band);
+    if (peaks === null) return null;
+    this.reducedEvaluations++;
+    const criticals = peaks
+      .map(({ omega, sigma }) => ({ omega, value: 1 / sigma }))
+      .sort((a, b) => a.value - b.value);
+    return { value: criticals[0].value, criticals };
+  }
+
+  #searchPencil(state: ModelState): DensePencil {
+    const pencil = this.adaptive.reducedAt(state);
+    return this.#searchReach === null ? pencil : truncateModes(pencil, this.#searchReach);
   }
 
   /** Worst operating points of a design by the reduced model, worst first. */

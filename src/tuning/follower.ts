@@ -1,0 +1,62 @@
+import { sizeOf } from "../margin/measure.js";
+import type { Followed, Session } from "./session.js";
+
+/** Peaks are followed up to this distance from the design searched last, share of each range. */
+const reach = 0.04;
+
+/** Competitors up to this multiple of the smallest value are followed, and the strongest few in any case. */
+const competing = 1.15;
+const fewest = 3;
+
+/** With more competitors than this a search costs no more. */
+const most = 6;
+
+/** A value that moved further than this share of its size (`sizeOf`) is asked of a search. */
+const calm = 0.15;
+
+/**
+ * The reduced model's word along an ascent at one operating point. Near a design that was searched its peaks
+ * are followed; anything that points to a change of scene (`followPeaks`, a step too far, a value that moved much) has
+ * the design searched instead. Peaks that were far below at the last search are not looked at, so what an
+ * ascent ends with is to be searched again.
+ */
+export class Follower {
+  readonly #session: Session;
+  readonly #at: ReadonlyMap<string, number>;
+  #searched:
+    | { readonly x: readonly number[]; readonly value: number; readonly peaks: readonly number[] }
+    | undefined;
+
+  constructor(session: Session, at: ReadonlyMap<string, number>) {
+    this.#session = session;
+    this.#at = at;
+  }
+
+  /** @param x - the design as a point of the unit space. */
+  at(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
+    return this.#follow(x, design) ?? this.#search(x, design);
+  }
+
+  #follow(x: readonly number[], design: ReadonlyMap<string, number>): Followed | null {
+    const last = this.#searched;
+    if (last === undefined || last.peaks.length === 0) return null;
+    if (x.some((xi, i) => Math.abs(xi - last.x[i]) > reach)) return null;
+    const followed = this.#session.follow(design, this.#at, last.peaks);
+    if (followed === null) return null;
+    const size = sizeOf(last.value, this.#session.setting);
+    return Math.abs(followed.value - last.value) <= calm * size ? followed : null;
+  }
+
+  #search(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
+    const estimate = this.#session.estimate(design, this.#at);
+    const { value, criticals } = estimate;
+    const count = Math.max(
+      fewest,
+      criticals.filter((critical) => critical.value <= competing * value).length,
+    );
+    const stable = criticals.every((critical) => critical.kind === "peak");
+    const peaks = stable && count <= most ? criticals.slice(0, count).map(({ omega }) => omega) : [];
+    this.#searched = { x, value, peaks };
+    return estimate;
+  }
+}
