@@ -81,7 +81,8 @@ def superlu(a, b):
         return dict(permc_spec=order, diag_pivot_thresh=0.01, options=dict(SymmetricMode=True))
 
     before = resident()
-    lu, whole = timed(lambda: spla.splu(a, **options("MMD_AT_PLUS_A")))
+    with_ordering = lambda: spla.splu(a, **options("MMD_AT_PLUS_A"))
+    lu, whole = timed(with_ordering)
     one = least(lambda: lu.solve(b[:, 0]))
     block = least(lambda: lu.solve(b)) / BLOCK
     rise = peak_resident() - before
@@ -96,7 +97,7 @@ def superlu(a, b):
         ordered.sort_indices()
         natural = lambda: spla.splu(ordered, **options("NATURAL"))
         runs = repeated(natural, timed(natural)[1])
-        ordering = max(0.0, whole - min(runs))
+        ordering = max(0.0, min(repeated(with_ordering, whole)) - min(runs))
     else:
         remark = "factor includes ordering"
     return {
