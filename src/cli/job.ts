@@ -28,6 +28,7 @@ export interface JobRequest {
   readonly at: readonly NamedValue[];
   /** null: the problem file's. */
   readonly seed: number | null;
+  readonly threads: number;
 }
 
 /** What is known of the problem once it has been read. */

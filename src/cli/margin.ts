@@ -5,6 +5,7 @@ import {
   type GivenOptions,
   outputOptions,
   runCommand,
+  threadsOption,
   vectorsOption,
 } from "./options.js";
 
@@ -22,7 +23,7 @@ Examples:
   dampwright margin ring-brake/ring-brake.json --at friction=0.5,pressure=1.2 --set bushOdd=900`,
     )
     .action((problem: string, options: GivenOptions) => runCommand("margin", problem, options));
-  const options = [atOption(), ...designOptions(), vectorsOption(), ...outputOptions()];
+  const options = [atOption(), ...designOptions(), vectorsOption(), threadsOption(), ...outputOptions()];
   for (const option of options) command.addOption(option);
   return command;
 };

@@ -1,3 +1,4 @@
+import { availableParallelism } from "node:os";
 import { InvalidArgumentError, Option } from "commander";
 import type { JobRequest } from "./job.js";
 import { parseAssignments, readDesign } from "./named-values.js";
@@ -14,6 +15,7 @@ export interface GivenOptions {
   readonly design?: string;
   readonly at?: readonly string[];
   readonly seed?: number;
+  readonly threads?: number;
 }
 
 const gather = (list: string, previous: readonly string[] = []): string[] => [...previous, list];
@@ -44,6 +46,12 @@ export const seedOption = (): Option =>
     wholeNumber(0, 2 ** 32 - 1),
   );
 
+export const threadsOption = (): Option =>
+  new Option(
+    "--threads <n>",
+    "threads to compute with; the result does not depend on it (default: as many as the machine has cores)",
+  ).argParser(wholeNumber(1, 64));
+
 /** Parser of a whole number between two ends. */
 export function wholeNumber(low: number, high: number): (text: string) => number {
   return (text) => {
@@ -69,6 +77,7 @@ export async function runCommand(
     design: [...fromFile.filter(({ name }) => !overridden.has(name)), ...set],
     at: parseAssignments(options.at ?? [], "--at"),
     seed: options.seed ?? null,
+    threads: options.threads ?? availableParallelism(),
   };
   const output: Output = {
     json: options.json ?? false,

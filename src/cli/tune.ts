@@ -5,6 +5,7 @@ import {
   outputOptions,
   runCommand,
   seedOption,
+  threadsOption,
   vectorsOption,
 } from "./options.js";
 
@@ -25,7 +26,7 @@ Examples:
   dampwright tune ring-brake/ring-brake.json --seed 7 --out results/seventh`,
     )
     .action((problem: string, options: GivenOptions) => runCommand("tune", problem, options));
-  const options = [seedOption(), ...designOptions(), vectorsOption(), ...outputOptions()];
+  const options = [seedOption(), ...designOptions(), vectorsOption(), threadsOption(), ...outputOptions()];
   for (const option of options) command.addOption(option);
   return command;
 };

@@ -37,9 +37,10 @@ function valuesOf(request: JobRequest, problem: Problem): Given {
 }
 
 async function answer(request: JobRequest, problem: Problem, { design, at }: Given): Promise<JobDone> {
-  const { command, version, seed } = request;
+  const { command, version, seed, threads } = request;
   const context: CommandContext = {
     version,
+    threads,
     progress: (progress) => send({ type: "progress", progress }),
     snapshot: (result) => send({ type: "snapshot", result }),
   };
@@ -47,7 +48,7 @@ async function answer(request: JobRequest, problem: Problem, { design, at }: Giv
     case "check":
       return { result: checkProblem(problem, { version }, context.progress), vectors: null };
     case "margin":
-      return computeMargin(problem, { design, ...(at.size === 0 ? {} : { at }) }, context);
+      return await computeMargin(problem, { design, ...(at.size === 0 ? {} : { at }) }, context);
     case "tune":
       return await tuneProblem(problem, { design, ...(seed === null ? {} : { seed }) }, context);
   }

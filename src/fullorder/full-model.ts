@@ -30,12 +30,14 @@ export interface FullPencil extends Pencil {
 export class FullModel {
   readonly model: ParametricModel;
   readonly counts: FactorisationCounts = { complex: 0, real: 0 };
-  readonly #analysis: SymbolicAnalysis;
+  readonly analysis: SymbolicAnalysis;
   readonly #outputTransposed: RealOperator;
+  #last: FullPencil | undefined;
 
-  constructor(model: ParametricModel) {
+  /** @param analysis - of the model's pattern, where another thread has made it already. */
+  constructor(model: ParametricModel, analysis: SymbolicAnalysis = analyse(model.pattern)) {
     this.model = model;
-    this.#analysis = analyse(model.pattern);
+    this.analysis = analysis;
     const ones = new Float64Array(model.blocks.length).fill(1);
     this.#outputTransposed = sparseOperator(
       concatenateScaled(
@@ -50,7 +52,15 @@ export class FullModel {
     return this.model.order;
   }
 
+  /** The pencil at one state; the last one is kept, since many questions in a row ask for the same. */
   pencilAt(state: ModelState): FullPencil {
+    const last = this.#last;
+    if (last !== undefined && sameModel(last.state, state)) return { ...last, state };
+    this.#last = this.#makePencil(state);
+    return this.#last;
+  }
+
+  #makePencil(state: ModelState): FullPencil {
     const { model, counts } = this;
     const { order, pattern, blocks } = model;
     const massMatrix = this.#assemble(state, ["mass"]);
@@ -66,7 +76,7 @@ export class FullModel {
     const factor = (sRe: number, sIm: number): PencilFactor => {
       counts.complex++;
       const values = combineValues(massMatrix, velocityMatrix, displacementMatrix, sRe, sIm);
-      const lu = factorComplex(this.#analysis, pattern, values);
+      const lu = factorComplex(this.analysis, pattern, values);
       return {
         sRe,
         sIm,
@@ -78,7 +88,7 @@ export class FullModel {
       counts.real++;
       const m = massMatrix.values;
       return factorSymmetric(
-        this.#analysis,
+        this.analysis,
         pattern,
         stiffnessMatrix.values.map((k, p) => k - lambda * m[p]),
       );
@@ -113,6 +123,14 @@ export class FullModel {
     });
     return { ...pattern, values };
   }
+}
+
+/** The same matrices follow from the same coefficients. */
+function sameModel(a: ModelState, b: ModelState): boolean {
+  return (
+    a.coefficients.every((value, k) => value === b.coefficients[k]) &&
+    a.sizes.every((value, k) => value === b.sizes[k])
+  );
 }
 
 /** s²M + sC + S on the common pattern. */

@@ -1,10 +1,9 @@
 import type { ModelState } from "../model/parametric-model.js";
 import type { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { inBand } from "./band.js";
-import { channelGain } from "./channel-gain.js";
 import { type DecayKind, decayOf } from "./decay.js";
+import type { FullCrew } from "./full-tasks.js";
 import { realDirections, type Setting } from "./measure.js";
-import { nearbyEigenvalues } from "./nearby-eigenvalues.js";
 import { findPeaks, gainFunction, peakDefaults } from "./peaks.js";
 import { spectralForm } from "./spectral-form.js";
 
@@ -24,13 +23,14 @@ export interface Audit {
 const leastEvaluations = 8;
 
 /** Compares σ_max(H) of full and reduced model, relative to the decisive peak σ*, at frequencies not used so far. */
-export function auditRadius(
+export async function auditRadius(
+  crew: FullCrew,
   adaptive: AdaptiveModel,
   state: ModelState,
   setting: Setting,
   used: readonly number[],
   sigma: number,
-): Audit {
+): Promise<Audit> {
   const form = spectralForm(adaptive.reducedAt(state), setting.shift);
   const gain = gainFunction(form);
   const lowPeaks = findPeaks(form, setting.band, { ...peakDefaults, screen: 0.02, keep: 0.05 }).map(
@@ -39,13 +39,15 @@ export function auditRadius(
   const count = Math.max(leastEvaluations, used.length);
   const poles = Array.from(form.kept, (j) => form.poles.im[j]);
   const frequencies = auditFrequencies(setting, used, lowPeaks, poles, count);
-  const pencil = adaptive.full.pencilAt(state);
+  const gains = await crew.run(
+    "gain",
+    frequencies.map((omega) => ({ state, re: 0, im: omega })),
+  );
   let worst = 0;
   let surprised = false;
   const directions: Float64Array[] = [];
-  for (const omega of frequencies) {
-    const full = channelGain(pencil, pencil.factor(0, omega));
-    const disagreement = Math.abs(full.sigma - gain(omega)) / sigma;
+  for (const full of gains) {
+    const disagreement = Math.abs(full.sigma - gain(full.sIm)) / sigma;
     worst = Math.max(worst, disagreement);
     if (full.sigma > sigma * (1 + 1e-9)) surprised = true;
     if (disagreement > 1e-6) directions.push(...realDirections(full.x, full.y));
@@ -58,23 +60,25 @@ export function auditRadius(
  * decide (decay at most `value + scale`) count as disagreement, which is measured in units of `scale`: the
  * decay that stands for the whole margin.
  */
-export function auditEigenvalues(
-  adaptive: AdaptiveModel,
+export async function auditEigenvalues(
+  crew: FullCrew,
   state: ModelState,
   setting: Setting,
   kind: DecayKind,
   { value, scale }: { readonly value: number; readonly scale: number },
   reduced: { readonly re: Float64Array; readonly im: Float64Array },
-): Audit {
+): Promise<Audit> {
   const poles = Array.from(reduced.im).filter((im) => inBand(setting.band, im));
   const frequencies = auditFrequencies(setting, [], [], poles, leastEvaluations);
-  const pencil = adaptive.full.pencilAt(state);
+  const areas = await crew.run(
+    "neighbourhood",
+    frequencies.map((omega, k) => ({ state, re: 0, im: omega, scale: setting.shift, seed: 100 + k })),
+  );
   const bound = value + scale;
   let worst = 0;
   let surprised = false;
   const directions: Float64Array[] = [];
-  frequencies.forEach((omega, k) => {
-    const { eigenvalues } = nearbyEigenvalues(pencil, pencil.factor(0, omega), setting.shift, 100 + k);
+  for (const { eigenvalues } of areas) {
     for (const { re, im, right } of eigenvalues) {
       const full = decayOf(kind, re, im);
       if (im < 0 || !inBand(setting.band, im) || !(full <= bound)) continue;
@@ -85,7 +89,7 @@ export function auditEigenvalues(
       if (full < value - Math.max(1e-6 * scale, 1e-10 * Math.hypot(re, im))) surprised = true;
       if (disagreement > 1e-6) directions.push(right.re, right.im);
     }
-  });
+  }
   return { evaluations: frequencies.length, worst, frequencies, surprised, directions };
 }
 

@@ -6,6 +6,7 @@ import { type Audit, auditEigenvalues, auditRadius } from "./audit.js";
 import { bandOf } from "./band.js";
 import { decay } from "./decay.js";
 import { eigenvalueList, judgeStability, type StabilityVerdict, verdictOf } from "./full-stability.js";
+import { type FullCrew, fullCrewOf } from "./full-tasks.js";
 import { type Checked, type Measure, type Setting, sizeOf } from "./measure.js";
 import { missedPeaks } from "./missed-peaks.js";
 import { multiplier } from "./multiplier.js";
@@ -67,13 +68,14 @@ const mostRestarts = 6;
 const roughAudit = 1e-3;
 
 /** Settles the margin at one point and gathers its evidence; see `DEVELOPERS.md`, Evidence. */
-export function marginAt(
+export async function marginAt(
   adaptive: AdaptiveModel,
   measure: Measure,
   values: Values,
   setting: Setting,
   options: SettleOptions = settleDefaults,
-): PointMargin {
+  crew: FullCrew = fullCrewOf(adaptive.full),
+): Promise<PointMargin> {
   const states = statesAt(adaptive.full.model, values);
   let hints: readonly number[] = [];
   for (let restart = 0; ; restart++) {
@@ -86,7 +88,7 @@ export function marginAt(
       reducedEigenvalues(adaptive, states(1), here),
     );
     const missed = missedOnReduced(adaptive, measure, states(1), here, settled);
-    const audit = auditOf(adaptive, measure, states, here, settled);
+    const audit = await auditOf(crew, adaptive, measure, states, here, settled);
     const news = [...stability.missed.flatMap(({ right }) => [right.re, right.im]), ...audit.directions];
     // A rough disagreement is a sample to learn from once; after that it stands in the lower end.
     const rough = audit.worst > roughAudit && restart === 0;
@@ -144,24 +146,25 @@ function missedOnReduced(
   return missedPeaks(adaptive.reducedAt(state), setting, decisive.found.gain.sigma);
 }
 
-function auditOf(
+async function auditOf(
+  crew: FullCrew,
   adaptive: AdaptiveModel,
   measure: Measure,
   states: (multiplier: number) => ModelState,
   setting: Setting,
   settled: Settled,
-): Audit {
+): Promise<Audit> {
   const { decisive, value, records } = settled;
   if (decisive?.found.kind === "peak") {
     const used = records.map((record) => record.omega);
-    return auditRadius(adaptive, states(1), setting, used, decisive.found.gain.sigma);
+    return auditRadius(crew, adaptive, states(1), setting, used, decisive.found.gain.sigma);
   }
   // Of a multiplier the audit looks at the model just where it is said to lose stability.
   const state = states(measure.name === "multiplier" && Number.isFinite(value) ? value : 1);
   const { value: slowest, eigenvalues } = decay("rate").estimate(() => adaptive.reducedAt(state), setting);
   const drift = decisive?.found.kind === "crossing" ? Math.abs(decisive.found.crossing.drift * value) : 0;
   const scale = Math.max(Math.abs(slowest), drift, 1e-9 * setting.shift);
-  return auditEigenvalues(adaptive, state, setting, "rate", { value: slowest, scale }, eigenvalues);
+  return auditEigenvalues(crew, state, setting, "rate", { value: slowest, scale }, eigenvalues);
 }
 
 function assemble(

@@ -43,6 +43,7 @@ export function programFormula(text: string, steps: readonly Step[]): Formula {
   return {
     text,
     names,
+    steps,
     evaluate: (values) => run(steps, values, null).x,
     derivative: (name, values) => (names.includes(name) ? run(steps, values, name).dx : 0),
   };

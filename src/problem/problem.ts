@@ -3,6 +3,8 @@
  * built from. Dofs and indices count from 0 here, from 1 in the files.
  */
 
+import type { Step } from "./formula-program.js";
+
 /** A sparse matrix by entries; duplicates are added by whoever assembles it. Symmetric files stand expanded. */
 export interface Triplets {
   readonly rows: number;
@@ -17,6 +19,8 @@ export interface Formula {
   readonly text: string;
   /** The names it uses, each once, in order of appearance. */
   readonly names: readonly string[];
+  /** The same as plain data: steps in postfix order, from which `programFormula` makes it again. */
+  readonly steps: readonly Step[];
   /** The value; NaN or infinite where the formula is undefined. Every used name must be in `values`. */
   evaluate(values: ReadonlyMap<string, number>): number;
   /** Exact partial derivative with respect to one name; 0 for a name it does not use. */

@@ -1,4 +1,5 @@
 import type { Problem } from "../problem/problem.js";
+import { crewsOf } from "./crews.js";
 import { type Judgement, judge, provisional, settledWorst } from "./judge.js";
 import type { MarginCommandResult, TuneCommandResult } from "./result.js";
 import { judgedDesign, marginResult, otherMeasures, recordOf } from "./result-builder.js";
@@ -8,6 +9,8 @@ import { type Tuned, tune, tuneDefaults } from "./tune.js";
 export interface CommandContext {
   readonly version: string;
   readonly progress: ReportProgress;
+  /** Threads to compute with; default 1. The result does not depend on it. */
+  readonly threads?: number;
   /** Called with a complete result object whenever a better one exists. */
   readonly snapshot: (result: MarginCommandResult | TuneCommandResult) => void;
 }
@@ -35,25 +38,42 @@ export interface WorstVector {
 }
 
 /** The smallest margin of one design over the envelope, or at one operating point, with its evidence. */
-export function computeMargin(
+export async function computeMargin(
   problem: Problem,
   options: MarginOptions,
   context: CommandContext,
-): { result: MarginCommandResult; vectors: WorstVector | null } {
+): Promise<{ result: MarginCommandResult; vectors: WorstVector | null }> {
   const began = Date.now();
   context.progress({ stage: "building the model and its real modes", done: 0, total: null });
   const design = startDesign(problem, options.design);
   const session = new Session(problem, design);
-  session.addExtremeSamples(design, false);
-  const at = options.at === undefined ? undefined : new Map([...session.operation.nominal, ...options.at]);
-  const judgement = judge(session, design, at, [], context.progress);
-  context.progress({ stage: "the other measures", done: 0, total: null });
-  const result = {
-    ...marginResult(session, context.version, design, judgement, began, null),
-    measures: otherMeasures(session, design, judgement.at),
-  };
-  context.snapshot(result);
-  return { result, vectors: worstVector(session, judgement) };
+  return await withThreads(session, context.threads ?? 1, async () => {
+    session.addExtremeSamples(design, false);
+    const at = options.at === undefined ? undefined : new Map([...session.operation.nominal, ...options.at]);
+    const judgement = await judge(session, design, at, [], context.progress);
+    context.progress({ stage: "the other measures", done: 0, total: null });
+    const result = {
+      ...marginResult(session, context.version, design, judgement, began, null),
+      measures: otherMeasures(session, design, judgement.at),
+    };
+    context.snapshot(result);
+    return { result, vectors: worstVector(session, judgement) };
+  });
+}
+
+/** Work with as many threads as wanted, which end with it. */
+async function withThreads<Result>(
+  session: Session,
+  threads: number,
+  work: () => Promise<Result>,
+): Promise<Result> {
+  const crews = crewsOf(session, threads);
+  session.crews = crews;
+  try {
+    return await work();
+  } finally {
+    await crews.close();
+  }
 }
 
 /** The best design within the limits, its margin settled on the full model, beside the start design. */
@@ -65,9 +85,20 @@ export async function tuneProblem(
   const began = Date.now();
   context.progress({ stage: "building the model and its real modes", done: 0, total: null });
   const design = startDesign(problem, options.design);
-  const started = withStart(problem, design);
-  const session = new Session(started, design);
+  const session = new Session(withStart(problem, design), design);
   const seed = options.seed ?? problem.tune.seed;
+  return await withThreads(session, context.threads ?? 1, () =>
+    tuneSession(session, design, seed, context, began),
+  );
+}
+
+async function tuneSession(
+  session: Session,
+  design: ReadonlyMap<string, number>,
+  seed: number,
+  context: CommandContext,
+  began: number,
+): Promise<{ result: TuneCommandResult; vectors: WorstVector | null }> {
   context.progress({ stage: "judging the start design", done: 0, total: null });
   const worst = settledWorst(session, design, []);
   const snapshot = (of: ReadonlyMap<string, number>, at: ReadonlyMap<string, number>, before: Judgement) => {
@@ -78,7 +109,7 @@ export async function tuneProblem(
     return judgement;
   };
   const first = snapshot(design, worst.at, provisional(session, design, worst.at));
-  const search = { ...tuneDefaults, seed, tolerance: problem.tune.tolerance };
+  const search = { ...tuneDefaults, seed, tolerance: session.problem.tune.tolerance };
   const tuned = await tune(
     session,
     worst,
@@ -88,8 +119,8 @@ export async function tuneProblem(
   );
   const { complex, real } = session.adaptive.full.counts;
   const final = session.designs.valuesOf(tuned.best.x);
-  const judgement = judge(session, final, undefined, tuned.best.active, context.progress);
-  const before = judge(session, design, worst.at, [], context.progress);
+  const judgement = await judge(session, final, undefined, tuned.best.active, context.progress);
+  const before = await judge(session, design, worst.at, [], context.progress);
   context.progress({ stage: "the other measures", done: 0, total: null });
   const trunk = marginResult(session, context.version, final, judgement, began, complex + real);
   const result: TuneCommandResult = {

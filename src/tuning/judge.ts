@@ -27,18 +27,19 @@ const mostRounds = 8;
  *
  * @param fixed - the operating point to judge at; undefined searches the envelope.
  */
-export function judge(
+export async function judge(
   session: Session,
   design: ReadonlyMap<string, number>,
   fixed: ReadonlyMap<string, number> | undefined,
   known: readonly ReadonlyMap<string, number>[],
   progress: ReportProgress,
-): Judgement {
+): Promise<Judgement> {
   const { adaptive, measure, setting } = session;
   const { at, checks } =
     fixed === undefined ? worstOfEnvelope(session, design, known, progress) : { at: fixed, checks: [] };
   progress({ stage: "gathering evidence", done: 0, total: null });
-  const point = marginAt(adaptive, measure, session.valuesAt(design, at), setting);
+  const values = session.valuesAt(design, at);
+  const point = await marginAt(adaptive, measure, values, setting, settleDefaults, session.crews.evidence);
   const worse = checks.some((check) => check.value < point.value - 1e-6 * Math.max(1, Math.abs(point.value)));
   const doubts = worse ? [...point.doubts, "a lower margin was met elsewhere in the envelope"] : point.doubts;
   return { at, point, envelope: checks, doubts };

@@ -14,6 +14,7 @@ import type { Problem, TermGroup } from "../problem/problem.js";
 import { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { truncateModes } from "../reduction/modal-truncation.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
+import { type Crews, ownCrews } from "./crews.js";
 import { DesignSpace } from "./design-space.js";
 import { type OperatingPoint, OperatingSpace, type Resolution } from "./operating-space.js";
 
@@ -42,6 +43,8 @@ export class Session {
   readonly setting: Setting;
   readonly designs: DesignSpace;
   readonly operation: OperatingSpace;
+  /** Who answers the questions that threads may share; this thread alone unless a command hires others. */
+  crews: Crews;
   reducedEvaluations = 0;
   /** Real modes of the reduced model are kept up to here [rad/s] while searching; null keeps all. */
   readonly #searchReach: number | null;
@@ -58,6 +61,7 @@ export class Session {
     this.adaptive = new AdaptiveModel(full, stateAt(this.model, nominal), upper);
     this.measure = measureOf(problem.margin);
     this.setting = settingOf(problem.margin, this.adaptive);
+    this.crews = ownCrews(this);
     // Modes that differ along the multiplier would give the two ends of the path different bases.
     const rigid = this.model.terms.every((term) => !term.multiplied || !structural.has(term.group));
     this.#searchReach = upper === null || this.adaptive.exact || !rigid ? null : 1.05 * upper;

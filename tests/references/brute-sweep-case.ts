@@ -11,7 +11,7 @@ export async function compareWithSweep(
   options: SweepOptions,
 ): Promise<void> {
   const problem = await ringBrakeProblem(dofs);
-  const { result } = computeMargin(
+  const { result } = await computeMargin(
     problem,
     { design, at },
     { version: "test", progress: () => {}, snapshot: () => {} },

@@ -75,13 +75,13 @@ it(`no one of ${designs} designs, each judged by its own full-model margins, bea
   const tuned = result.margin.value!;
   const optimum = new Map(Object.entries(result.design));
   // The optimum anew, on a model that has learnt nothing.
-  const again = computeMargin(
+  const again = await computeMargin(
     problem,
     { design: optimum, at: new Map(Object.entries(result.margin.at)) },
     context,
   );
   expect(Math.abs(again.result.margin.value! / tuned - 1)).toBeLessThan(1e-6);
-  const anew = computeMargin(problem, { design: optimum }, context);
+  const anew = await computeMargin(problem, { design: optimum }, context);
   // The envelope is searched again from nothing; its own search ends within 4e-3 of each range.
   expect(anew.result.margin.value! / tuned).toBeGreaterThan(1 - 1e-3);
 

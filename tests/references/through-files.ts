@@ -30,7 +30,7 @@ export async function marginOf(
   problem: Questions,
   options: MarginOptions = {},
 ): Promise<MarginCommandResult> {
-  return computeMargin(await written(problem), options, quiet).result;
+  return (await computeMargin(await written(problem), options, quiet)).result;
 }
 
 export async function tuned(problem: Questions): Promise<TuneCommandResult> {

@@ -28,6 +28,7 @@ const request: JobRequest = {
   design: [],
   at: [],
   seed: null,
+  threads: 1,
 };
 const deaf = { opened: () => undefined, progress: () => undefined, snapshot: () => undefined };
 const listeners = () => process.listenerCount("SIGINT") + process.listenerCount("SIGTERM");

@@ -169,6 +169,7 @@ describe("the results folder", () => {
     design: [{ name: "layer", value: 1, at: "--set", typed: true }],
     at: [],
     seed: null,
+    threads: 1,
   };
   const inputs = [{ path: "brake.json", sha256: "ab", bytes: 2 }];
 

@@ -32,7 +32,7 @@ it("a corner that the full model finds lower wins against a reduced model that s
   const mistaken = await session();
   // A search over the envelope that always ends at the wrong corner, and below what is true anywhere.
   vi.spyOn(mistaken, "worstPoints").mockReturnValue([{ at: new Map([["load", 1.5]]), value: 1 }]);
-  const { at, point, doubts } = judge(mistaken, new Map(), undefined, [], () => undefined);
+  const { at, point, doubts } = await judge(mistaken, new Map(), undefined, [], () => undefined);
   expect(at.get("load")).toBe(0.5);
   // Settled to 1e-6, and exact on one dof.
   expect(point.value).toBeCloseTo(Math.sqrt(4 * 50 - 1) / 2, 8);

@@ -80,8 +80,8 @@ const cases: readonly (readonly [string, Case, number, number, number])[] = [
 ];
 
 describe.each(cases)("%s", (_, given, r, alpha, zeta) => {
-  it("has its radius", () => {
-    const point = ask(given, radius);
+  it("has its radius", async () => {
+    const point = await ask(given, radius);
     expect(point.doubts).toEqual([]);
     if (r < 0) {
       // Minus the growth 0.1 over ω_ref, whatever that is.
@@ -96,15 +96,15 @@ describe.each(cases)("%s", (_, given, r, alpha, zeta) => {
     else expect(point.value).toBeCloseTo(r, 10);
   });
 
-  it("has its multiplier", () => {
-    const point = ask(given, multiplier);
+  it("has its multiplier", async () => {
+    const point = await ask(given, multiplier);
     expect(point.doubts).toEqual([]);
     if (alpha === inf) expect(point.value).toBe(inf);
     else expect(point.value).toBeCloseTo(alpha, 10);
   });
 
-  it("has its damping ratio", () => {
-    const point = ask(given, decay("ratio"));
+  it("has its damping ratio", async () => {
+    const point = await ask(given, decay("ratio"));
     expect(point.doubts).toEqual([]);
     // A defective eigenvalue is known to √eps.
     expect(point.value).toBeCloseTo(zeta, 7);

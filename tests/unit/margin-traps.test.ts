@@ -38,7 +38,7 @@ function pose(given: Case, bandHz: readonly [number, number], more: Partial<Prob
   return { problem, adaptive, setting: settingOf(problem.margin, adaptive) };
 }
 
-const ask = ({ problem, adaptive, setting }: Posed, measure: Measure): PointMargin =>
+const ask = ({ problem, adaptive, setting }: Posed, measure: Measure): Promise<PointMargin> =>
   marginAt(adaptive, measure, problem.constants, setting);
 
 /** Unit masses on springs of their own, ω_i as given, damped with the ratio ζ. */
@@ -69,7 +69,7 @@ const ladder = Array.from({ length: n }, (_, i) => 0.1 * (i + 1) + 0.001 * i * i
 const band: readonly [number, number] = [hz(0.05), hz(1.15)];
 
 describe("trap 1: a one-sided projection and stability", () => {
-  it("a reduced model that is unstable though the full one is stable is refuted", () => {
+  it("a reduced model that is unstable though the full one is stable is refuted", async () => {
     // Dof 0 is fed by dof 79 (ω ≈ 14, outside every basis), which is held down by dof 0: N couples them so that the
     // statically condensed stiffness is positive, but that of dof 0 alone, k₀ + N₀₀ = 0.01 − 0.05, is negative.
     const far = n - 1;
@@ -85,7 +85,7 @@ describe("trap 1: a one-sided projection and stability", () => {
       posed.setting,
     ).criticals;
     expect(before!.kind).toBe("eigenvalue");
-    const point = ask(posed, radius);
+    const point = await ask(posed, radius);
     // Guard: `checkEigenvalue` in radius.ts looks at the full model before it believes.
     expect(point.value).toBeGreaterThan(0);
     expect(point.stability.unstable).toBe(0);
@@ -112,7 +112,7 @@ describe("trap 1: a one-sided projection and stability", () => {
     expect(settled.value).toBeCloseTo(0.02 * ladder[1]! ** 2, 5);
   });
 
-  it("an instability that the basis cannot show is found on the full model and learnt", () => {
+  it("an instability that the basis cannot show is found on the full model and learnt", async () => {
     // Two modes far above the band, pulled down into it by N and made to flutter there; B, C and the basis do not see them.
     const [a, b] = [n - 2, n - 1] as const;
     const given = {
@@ -135,7 +135,7 @@ describe("trap 1: a one-sided projection and stability", () => {
     const verdict = judgeStability(adaptive, state, setting, reduced);
     expect(verdict.missed).toHaveLength(1);
     // Guard: `walkAxis` in full-stability.ts (no suspect of the reduced model is near), `news` in point-margin.ts.
-    const point = ask(posed, radius);
+    const point = await ask(posed, radius);
     expect(point.stability.unstable).toBe(2);
     expect(point.value).toBeLessThan(0);
     // s² + 0.01 s + 0.5 ± 0.4i = 0.
@@ -144,14 +144,14 @@ describe("trap 1: a one-sided projection and stability", () => {
     expect(point.doubts).toEqual([]);
   });
 
-  it("an instability in the band that B and C do not see makes the value negative", () => {
+  it("an instability in the band that B and C do not see makes the value negative", async () => {
     const given = {
       ...oscillators(ladder, 0.01),
       frictional: entries([4, 4, -0.1]),
       left: unitColumn(1),
       right: unitRow(1),
     };
-    const point = ask(pose(given, band), radius);
+    const point = await ask(pose(given, band), radius);
     // Guard: `unstableCriticals` in radius.ts.
     expect(point.value).toBeLessThan(0);
     expect(point.stability.unstable).toBe(2);
@@ -159,9 +159,9 @@ describe("trap 1: a one-sided projection and stability", () => {
 });
 
 describe("trap 2: the ends of the frequency axis", () => {
-  it("peaks beyond the band are not chased, those at its ends are seen", () => {
+  it("peaks beyond the band are not chased, those at its ends are seen", async () => {
     const given = { ...oscillators(ladder, 0.02), left: unitColumn(14), right: unitRow(14) };
-    const point = ask(pose(given, band), radius);
+    const point = await ask(pose(given, band), radius);
     // The only mode that B and C see lies above the band: the gain rises to the band's end.
     // Guard: `ends` in peaks.ts, `startGrid`.
     expect(point.omega).toBeCloseTo(2 * Math.PI * band[1], 6);
@@ -170,7 +170,7 @@ describe("trap 2: the ends of the frequency axis", () => {
     expect(point.value).toBeCloseTo(Math.hypot(w * w - end * end, 0.04 * w * end), 8);
   });
 
-  it("ω = 0 is looked at when the band holds it", () => {
+  it("ω = 0 is looked at when the band holds it", async () => {
     // Overdamped at dof 0: the compliance falls from ω = 0 on.
     const given = {
       ...oscillators(ladder, 0.02),
@@ -178,14 +178,14 @@ describe("trap 2: the ends of the frequency axis", () => {
       left: unitColumn(0),
       right: unitRow(0),
     };
-    const point = ask(pose(given, [0, band[1]]), radius);
+    const point = await ask(pose(given, [0, band[1]]), radius);
     // Guard: `band.low` among the marks in peaks.ts.
     expect(point.omega).toBe(0);
     expect(point.value).toBeCloseTo(ladder[0]! ** 2, 10);
     expect(point.loss).toBe("divergence");
   });
 
-  it("without a band the gain's limit at infinity counts: damping errors on massless undamped dofs have radius 0", () => {
+  it("without a band the gain's limit at infinity counts: damping errors on massless undamped dofs have radius 0", async () => {
     const given: Case = {
       mass: diagonal([1, 0]),
       damping: diagonal([0.1, 0]),
@@ -195,7 +195,7 @@ describe("trap 2: the ends of the frequency axis", () => {
     const problem = problemOf(given);
     const model = buildModel(problem);
     const adaptive = new AdaptiveModel(new FullModel(model), stateAt(model, new Map()), null);
-    const point = marginAt(adaptive, radius, new Map(), settingOf(problem.margin, adaptive));
+    const point = await marginAt(adaptive, radius, new Map(), settingOf(problem.margin, adaptive));
     // Guard: `growsWithoutBound` in peaks.ts.
     expect(point.value).toBe(0);
     expect(point.doubts).toEqual([]);
@@ -203,7 +203,7 @@ describe("trap 2: the ends of the frequency axis", () => {
 });
 
 describe("trap 3: the reduced optimum is no bound", () => {
-  it("the value reported is that of a full solve at the frequency reported", () => {
+  it("the value reported is that of a full solve at the frequency reported", async () => {
     const given = {
       ...oscillators(ladder, 0.02),
       circulatory: entries([2, 40, 0.3], [40, 2, -0.2], [3, 50, 0.4], [60, 3, 0.1]),
@@ -211,7 +211,7 @@ describe("trap 3: the reduced optimum is no bound", () => {
       right: [0, 1].map((k) => Array.from({ length: n }, (_, j) => Math.sin(2 * j + k))),
     };
     const posed = pose(given, band);
-    const point = ask(posed, radius);
+    const point = await ask(posed, radius);
     const pencil = posed.adaptive.full.pencilAt(stateAt(posed.adaptive.full.model, new Map()));
     const fullAt = (omega: number) => 1 / channelGain(pencil, pencil.factor(0, omega)).sigma;
     expect(point.value).toBeCloseTo(fullAt(point.omega!), 12);
@@ -312,7 +312,7 @@ describe("trap 7: a missed mode", () => {
     expect(adaptive.modeCounts[0]!.complete).toBe(false);
   });
 
-  it("an incomplete count becomes a doubt", () => {
+  it("an incomplete count becomes a doubt", async () => {
     const given = { ...oscillators(ladder, 0.02), left: unitColumn(2), right: unitRow(2) };
     const posed = pose(given, band);
     expect(posed.adaptive.modeCounts.every((modes) => modes.complete)).toBe(true);
@@ -324,15 +324,15 @@ describe("trap 7: a missed mode", () => {
             ? Reflect.get(target, key, target).bind(target)
             : Reflect.get(target, key, target),
     });
-    const point = marginAt(incomplete, radius, new Map(), posed.setting);
+    const point = await marginAt(incomplete, radius, new Map(), posed.setting);
     // Guard: `adaptive.modeCounts.some` in point-margin.ts.
     expect(point.doubts).toHaveLength(1);
-    expect(ask(posed, radius).doubts).toEqual([]);
+    expect((await ask(posed, radius)).doubts).toEqual([]);
   });
 });
 
 describe("trap 8: undamped coalescence", () => {
-  it("is told from the onset with damping: modes on the axis are counted", () => {
+  it("is told from the onset with damping: modes on the axis are counted", async () => {
     const given: Case = {
       mass: diagonal([1, 1]),
       stiffness: [
@@ -351,8 +351,8 @@ describe("trap 8: undamped coalescence", () => {
       const adaptive = new AdaptiveModel(new FullModel(model), stateAt(model, new Map()), null);
       return marginAt(adaptive, multiplier, new Map(), settingOf(problem.margin, adaptive));
     };
-    const undamped = at(0);
-    const damped = at(1e-4);
+    const undamped = await at(0);
+    const damped = await at(1e-4);
     // 5/6 without damping. With vanishing damping in the ratio 5:1 the onset is far lower: one is not the limit of the other.
     expect(undamped.value).toBeCloseTo(5 / 6, 5);
     expect(damped.value).toBeLessThan(0.8);
@@ -366,7 +366,7 @@ describe("trap 8: undamped coalescence", () => {
     const problem = problemOf(below);
     const model = buildModel(problem);
     const adaptive = new AdaptiveModel(new FullModel(model), stateAt(model, new Map()), null);
-    const point = marginAt(adaptive, multiplier, new Map(), settingOf(problem.margin, adaptive));
+    const point = await marginAt(adaptive, multiplier, new Map(), settingOf(problem.margin, adaptive));
     // Guard: `onAxis` in full-stability.ts, from which the command warns.
     expect(point.stability.onAxis).toBe(2);
     expect(point.stability.unstable).toBe(0);
@@ -374,7 +374,7 @@ describe("trap 8: undamped coalescence", () => {
 });
 
 describe("trap 9: dashpots of low rank", () => {
-  it("with their columns in the basis the reduced model is good for every rate at once", () => {
+  it("with their columns in the basis the reduced model is good for every rate at once", async () => {
     const given = { ...oscillators(ladder, 0.02), left: unitColumn(0), right: unitRow(0) };
     // A dashpot across the whole chain, its rate free.
     const ends = Array.from({ length: n }, (_, i) => (i % 4 === 0 ? 1 : 0));
@@ -412,7 +412,7 @@ describe("trap 9: dashpots of low rank", () => {
     for (const rate of [0.01, 0.1, 1, 30]) {
       const values = new Map([["rate", rate]]);
       const first = radius.estimate(() => adaptive.reducedAt(stateAt(model, values)), setting).value;
-      const own = marginAt(make(rate), radius, values, setting).value;
+      const own = (await marginAt(make(rate), radius, values, setting)).value;
       // Guard: the damping terms among the loads of #appendStaticResponses in adaptive-model.ts (the
       // dashpot's 20 columns are equal: one direction). Static responses leave a few per mille at the band's end.
       expect(Math.abs(first / own - 1)).toBeLessThan(0.02);
@@ -421,21 +421,21 @@ describe("trap 9: dashpots of low rank", () => {
 });
 
 describe("trap 10: the loop agrees with itself at its own maximiser", () => {
-  it("competing peaks within the factor are checked one by one, and the lowest value decides", () => {
+  it("competing peaks within the factor are checked one by one, and the lowest value decides", async () => {
     const given = {
       ...oscillators(ladder, 0.02),
       circulatory: entries([2, 40, 0.5], [40, 2, -0.5], [6, 50, 3], [50, 6, -3]),
       left: Array.from({ length: n }, (_, i) => [i === 2 ? 0.12 : i === 6 ? 0.59 : 0]),
       right: [Array.from({ length: n }, (_, i) => (i === 2 || i === 6 ? 1 : 0))],
     };
-    const point = ask(pose(given, band), radius);
+    const point = await ask(pose(given, band), radius);
     const { records, decisive } = point.settled;
     // Guard: `competitors` in settle.ts.
     expect(new Set(records.map(({ omega }) => omega.toFixed(1))).size).toBeGreaterThan(1);
     expect(decisive!.value).toBe(Math.min(...records.slice(-2).map(({ full }) => full)));
   });
 
-  it("a peak that the search by poles misses is brought back by the level-set test", () => {
+  it("a peak that the search by poles misses is brought back by the level-set test", async () => {
     const given = { ...oscillators(ladder, 0.02), left: unitColumn(2), right: unitRow(2) };
     const posed = pose(given, band);
     // A search that is blind below ω = 0.5.
@@ -446,13 +446,13 @@ describe("trap 10: the loop agrees with itself at its own maximiser", () => {
         return radius.estimate(pencilAt, told ? here : { ...here, band: { low: 0.5, high: here.band.high } });
       },
     };
-    const point = ask(posed, blind);
+    const point = await ask(posed, blind);
     // Guard: `hints` in marginAt, point-margin.ts.
     expect(point.omega).toBeCloseTo(ladder[2]!, 2);
     expect(point.levelSetClean).toBe(true);
   });
 
-  it("a higher peak that only the full model shows surprises the audit", () => {
+  it("a higher peak that only the full model shows surprises the audit", async () => {
     // Dof 79 lies far above every basis; N pulls it down to ω ≈ 0.7, well damped. Of 25 channels no static response is taken.
     const far = n - 1;
     const channels = Array.from({ length: n }, (_, i) =>
@@ -472,7 +472,7 @@ describe("trap 10: the loop agrees with itself at its own maximiser", () => {
     expect(
       radius.estimate(() => posed.adaptive.reducedAt(state), posed.setting).criticals[0]!.omega,
     ).toBeLessThan(0.3);
-    const point = ask(posed, radius);
+    const point = await ask(posed, radius);
     // Guard: `audit.surprised` in marginAt, point-margin.ts. 400 times the compliance of a single mode, 1.6 times the peak at dof 1, which alone the basis shows.
     const top = 1 / (0.3 * Math.sqrt(0.5 - 0.15 ** 2));
     expect(point.value).toBeCloseTo(1 / (400 * top), 8);
@@ -485,38 +485,41 @@ describe("trap 11: instability just outside the band", () => {
     [1.05, 2],
     [1.25, 2],
     [1.4, 0],
-  ])("at %f of the band's end is counted apart (%i), by full and reduced models alike", (factor, outside) => {
-    const top = 2 * Math.PI * band[1];
-    const omega = ladder.map((w, i) => (i === 20 ? factor * top : w < 1.6 && w > 1.1 ? w + 2 : w));
-    const given = {
-      ...oscillators(omega, 0.02),
-      frictional: entries([20, 20, -0.3]),
-      left: unitColumn(2),
-      right: unitRow(2),
-    };
-    const point = ask(pose(given, band), radius);
-    // Guard: `outsideReach` in full-stability.ts.
-    expect(point.stability.unstableOutside).toBe(outside);
-    expect(point.stability.unstable).toBe(0);
-    expect(point.value).toBeGreaterThan(0);
-    expect(point.doubts).toEqual([]);
-    // The same model small enough to be its own reduced model.
-    const keep = [0, 1, 2, 3, 4, 20, 70];
-    const cut = (rows: readonly (readonly number[])[]) => keep.map((i) => keep.map((j) => rows[i]![j]!));
-    const small = pose(
-      {
-        mass: cut(given.mass),
-        damping: cut(given.damping),
-        stiffness: cut(given.stiffness),
-        frictional: cut(given.frictional),
-        left: keep.map((i) => given.left[i]!),
-        right: [keep.map((i) => given.right[0]![i]!)],
-      },
-      band,
-    );
-    expect(small.adaptive.exact).toBe(true);
-    expect(ask(small, radius).stability.unstableOutside).toBe(outside);
-  });
+  ])(
+    "at %f of the band's end is counted apart (%i), by full and reduced models alike",
+    async (factor, outside) => {
+      const top = 2 * Math.PI * band[1];
+      const omega = ladder.map((w, i) => (i === 20 ? factor * top : w < 1.6 && w > 1.1 ? w + 2 : w));
+      const given = {
+        ...oscillators(omega, 0.02),
+        frictional: entries([20, 20, -0.3]),
+        left: unitColumn(2),
+        right: unitRow(2),
+      };
+      const point = await ask(pose(given, band), radius);
+      // Guard: `outsideReach` in full-stability.ts.
+      expect(point.stability.unstableOutside).toBe(outside);
+      expect(point.stability.unstable).toBe(0);
+      expect(point.value).toBeGreaterThan(0);
+      expect(point.doubts).toEqual([]);
+      // The same model small enough to be its own reduced model.
+      const keep = [0, 1, 2, 3, 4, 20, 70];
+      const cut = (rows: readonly (readonly number[])[]) => keep.map((i) => keep.map((j) => rows[i]![j]!));
+      const small = pose(
+        {
+          mass: cut(given.mass),
+          damping: cut(given.damping),
+          stiffness: cut(given.stiffness),
+          frictional: cut(given.frictional),
+          left: keep.map((i) => given.left[i]!),
+          right: [keep.map((i) => given.right[0]![i]!)],
+        },
+        band,
+      );
+      expect(small.adaptive.exact).toBe(true);
+      expect((await ask(small, radius)).stability.unstableOutside).toBe(outside);
+    },
+  );
 });
 
 describe("wide B and C", () => {
