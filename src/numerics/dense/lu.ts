@@ -19,7 +19,7 @@ export interface DenseLu {
   solveInPlace(b: DenseMatrix): void;
 }
 
-const panelWidth = 32;
+const panelWidth = 16;
 
 /**
  * Factors A by Gaussian elimination with partial pivoting, blocked by columns.

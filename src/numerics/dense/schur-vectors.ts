@@ -72,9 +72,13 @@ function substituteBack(
       solver.solveOne(t[j + j * n], x, y, j);
     }
     limit(x, y, top, j, 0, n);
-    for (let c = top; c <= j; c++) {
-      subtractColumn(t, c * n, top, x[c], x);
-      if (y !== null) subtractColumn(t, c * n, top, y[c], y);
+    if (isPair && y !== null) {
+      subtractColumnPair(t, top * n, n, top, x[top], x[j], y[top], y[j], x, y);
+    } else {
+      for (let c = top; c <= j; c++) {
+        subtractColumn(t, c * n, top, x[c], x);
+        if (y !== null) subtractColumn(t, c * n, top, y[c], y);
+      }
     }
     j = top - 1;
   }
@@ -82,6 +86,28 @@ function substituteBack(
 
 function subtractColumn(t: Float64Array, at: number, rows: number, factor: number, x: Float64Array): void {
   for (let i = 0; i < rows; i++) x[i] -= factor * t[at + i];
+}
+
+// Two columns off two vectors in one pass: the usual case of a pair met by the vectors of a pair.
+function subtractColumnPair(
+  t: Float64Array,
+  at: number,
+  stride: number,
+  rows: number,
+  x0: number,
+  x1: number,
+  y0: number,
+  y1: number,
+  x: Float64Array,
+  y: Float64Array,
+): void {
+  const next = at + stride;
+  for (let i = 0; i < rows; i++) {
+    const a = t[at + i];
+    const b = t[next + i];
+    x[i] -= x0 * a + x1 * b;
+    y[i] -= y0 * a + y1 * b;
+  }
 }
 
 // Scales the vector down when entries first … last have grown past the bound.
