@@ -6,7 +6,6 @@ export function liftBy(basis: DenseMatrix, reduced: ComplexVector): ComplexVecto
   const cols = reduced.re.length;
   const v = denseOperator({ rows: basis.rows, cols, values: basis.values });
   const out = complexVector(basis.rows);
-  v.addInto(out.re, 1, reduced.re);
-  v.addInto(out.im, 1, reduced.im);
+  v.addInto(out, 1, 0, reduced);
   return out;
 }

@@ -1,13 +1,9 @@
 import type { Pencil, PencilFactor } from "../model/pencil.js";
 import { applyPencil, pencilNorm } from "../model/pencil.js";
+import { addComplexProductInto } from "../numerics/dense/complex-block-kernels.js";
 import { complexEigenvalues } from "../numerics/dense/complex-eigen.js";
-import {
-  addScaledInto,
-  innerProduct,
-  norm2,
-  normaliseInPlace,
-  scaleInPlace,
-} from "../numerics/dense/complex-vectors.js";
+import { orthogonaliseInPlace } from "../numerics/dense/complex-gram-schmidt.js";
+import { norm2, normaliseInPlace } from "../numerics/dense/complex-vectors.js";
 import { factorDenseComplex } from "../numerics/dense/lu.js";
 import {
   type ComplexMatrix,
@@ -16,9 +12,7 @@ import {
   complexVector,
   complexZeros,
 } from "../numerics/dense/matrix.js";
-import { complexMultiply } from "../numerics/dense/products.js";
 import { createRandom } from "../numerics/random.js";
-import { applyComplex } from "../numerics/real-operator.js";
 import { asColumn } from "./eigenpair.js";
 
 /** One eigenvalue found near a shift, with its right vector (unit length) and its residual. */
@@ -39,7 +33,8 @@ export interface Neighbourhood {
   readonly eigenvalues: readonly NearbyEigenvalue[];
 }
 
-const steps = 28;
+/** Solves for one disc where nothing else is asked for. */
+const usualSteps = 28;
 const converged = 1e-9;
 
 /**
@@ -48,6 +43,7 @@ const converged = 1e-9;
  * a judgement of the full model by itself.
  *
  * @param scale - s₀ [rad/s] that makes the two halves of the companion vector comparable.
+ * @param steps - Solves, so the dimension of the Krylov space: more of them make a wider disc.
  *
  * Source: Tisseur & Meerbergen, SIAM Review 43 (2001) §5; Saad, Numerical Methods for Large Eigenvalue Problems, ch. 6.
  */
@@ -56,8 +52,9 @@ export function nearbyEigenvalues(
   factor: PencilFactor,
   scale: number,
   seed: number,
+  steps: number = usualSteps,
 ): Neighbourhood {
-  const space = krylovSpace(pencil, factor, scale, seed);
+  const space = krylovSpace(pencil, factor, scale, seed, steps);
   const theta = complexEigenvalues(space.hessenberg);
   const order = Array.from(theta.re.keys()).sort(
     (a, b) => Math.hypot(theta.re[b], theta.im[b]) - Math.hypot(theta.re[a], theta.im[a]),
@@ -87,74 +84,93 @@ export function nearbyEigenvalues(
 }
 
 interface KrylovSpace {
-  /** Upper halves (displacements) of the basis vectors, n×k. */
-  readonly displacements: ComplexMatrix;
+  /** The basis, one column more than `hessenberg` has, at least: displacements above velocities over s₀, 2n rows. */
+  readonly basis: ComplexMatrix;
   readonly hessenberg: ComplexMatrix;
   /** The space closed: its eigenvalues are all there are. */
   readonly exhausted: boolean;
 }
 
-function krylovSpace(pencil: Pencil, factor: PencilFactor, scale: number, seed: number): KrylovSpace {
-  const n = pencil.order;
-  const most = Math.min(steps, 2 * n);
-  const basis: ComplexVector[] = [];
+function krylovSpace(
+  pencil: Pencil,
+  factor: PencilFactor,
+  scale: number,
+  seed: number,
+  steps: number,
+): KrylovSpace {
+  const rows = 2 * pencil.order;
+  const most = Math.min(steps, rows);
+  const v = complexZeros(rows, most + 1);
   const h = complexZeros(most, most);
+  const room = roomFor(pencil.order);
   const random = createRandom(seed);
-  const start = complexVector(2 * n);
-  for (let i = 0; i < 2 * n; i++) start.re[i] = random.normal();
+  const start = complexVector(rows);
+  for (let i = 0; i < rows; i++) start.re[i] = random.normal();
   // Pushed through the operator once: the start then has no part in the infinite eigenvalues.
-  let next = applyOperator(pencil, factor, scale, start);
-  normaliseInPlace(next);
-  let exhausted = most === 2 * n;
+  applyOperatorInto(complexColumn(v, 0), pencil, factor, scale, start, room);
+  normaliseInPlace(complexColumn(v, 0));
+  let exhausted = most === rows;
   let k = 0;
   while (k < most) {
-    basis.push(next);
-    next = applyOperator(pencil, factor, scale, next);
+    const next = complexColumn(v, k + 1);
+    applyOperatorInto(next, pencil, factor, scale, complexColumn(v, k), room);
     const before = norm2(next);
-    for (let pass = 0; pass < 2; pass++) {
-      basis.forEach((q, i) => {
-        const c = innerProduct(q, next);
-        addScaledInto(next, -c.re, -c.im, q);
-        h.re[i + k * most] += c.re;
-        h.im[i + k * most] += c.im;
-      });
-    }
-    const left = normaliseInPlace(next);
     k++;
+    orthogonaliseInPlace(next, v, k, complexColumn(h, k - 1));
+    const left = normaliseInPlace(next);
     if (left <= 1e-13 * before) {
       exhausted = true;
       break;
     }
     if (k < most) h.re[k + (k - 1) * most] = left;
   }
-  return { displacements: upperHalves(basis, n), hessenberg: leadingBlock(h, k), exhausted };
+  return { basis: v, hessenberg: leadingBlock(h, k), exhausted };
 }
 
-/** z ← (A − σE)⁻¹ E z with z = [q; q̇/s₀]: x = −P(σ)⁻¹(M z₂ s₀ + (C + σM) z₁), then [x; (z₁ + σx)/s₀]. */
-function applyOperator(pencil: Pencil, factor: PencilFactor, scale: number, z: ComplexVector): ComplexVector {
+/** Vectors of length n that every step uses anew. */
+interface Room {
+  readonly sum: ComplexVector;
+  readonly load: ComplexVector;
+}
+
+function roomFor(n: number): Room {
+  return { sum: complexVector(n), load: complexVector(n) };
+}
+
+/** out ← (A − σE)⁻¹ E z with z = [q; q̇/s₀]: x = −P(σ)⁻¹(M z₂ s₀ + (C + σM) z₁), then [x; (z₁ + σx)/s₀]. */
+function applyOperatorInto(
+  out: ComplexVector,
+  pencil: Pencil,
+  factor: PencilFactor,
+  scale: number,
+  z: ComplexVector,
+  { sum, load }: Room,
+): void {
   const n = pencil.order;
   const { sRe, sIm } = factor;
-  const z1 = { re: z.re.subarray(0, n), im: z.im.subarray(0, n) };
-  const z2 = { re: z.re.subarray(n), im: z.im.subarray(n) };
-  const sum = complexVector(n);
-  addScaledInto(sum, scale, 0, z2);
-  addScaledInto(sum, sRe, sIm, z1);
-  const load = applyComplex(pencil.mass, sum);
-  addScaledInto(load, 1, 0, applyComplex(pencil.velocity, z1));
+  const { re: zRe, im: zIm } = z;
+  for (let i = 0; i < n; i++) {
+    sum.re[i] = scale * zRe[n + i] + sRe * zRe[i] - sIm * zIm[i];
+    sum.im[i] = scale * zIm[n + i] + sRe * zIm[i] + sIm * zRe[i];
+  }
+  load.re.fill(0);
+  load.im.fill(0);
+  pencil.mass.addInto(load, 1, 0, sum);
+  pencil.velocity.addInto(load, 1, 0, { re: zRe.subarray(0, n), im: zIm.subarray(0, n) });
   factor.solveInPlace(asColumn(load));
-  const out = complexVector(2 * n);
-  const top = { re: out.re.subarray(0, n), im: out.im.subarray(0, n) };
-  const bottom = { re: out.re.subarray(n), im: out.im.subarray(n) };
-  addScaledInto(top, -1, 0, load);
-  addScaledInto(bottom, 1, 0, z1);
-  addScaledInto(bottom, sRe, sIm, top);
-  scaleInPlace(bottom, 1 / scale, 0);
-  return out;
+  for (let i = 0; i < n; i++) {
+    const xRe = -load.re[i];
+    const xIm = -load.im[i];
+    out.re[i] = xRe;
+    out.im[i] = xIm;
+    out.re[n + i] = (zRe[i] + sRe * xRe - sIm * xIm) / scale;
+    out.im[n + i] = (zIm[i] + sRe * xIm + sIm * xRe) / scale;
+  }
 }
 
 /** Eigenvector of the Hessenberg matrix by two steps of inverse iteration, lifted to the displacements. */
 function ritzVector(space: KrylovSpace, thetaRe: number, thetaIm: number): ComplexVector {
-  const { hessenberg, displacements } = space;
+  const { hessenberg, basis } = space;
   const k = hessenberg.rows;
   const shifted = { rows: k, cols: k, re: hessenberg.re.slice(), im: hessenberg.im.slice() };
   for (let i = 0; i < k; i++) {
@@ -168,19 +184,20 @@ function ritzVector(space: KrylovSpace, thetaRe: number, thetaIm: number): Compl
     lu.solveInPlace(asColumn(weights));
     normaliseInPlace(weights);
   }
-  const x = complexMultiply(displacements, asColumn(weights));
-  const right = { re: x.re, im: x.im };
+  const n = basis.rows / 2;
+  const right = complexVector(n);
+  const displacements = { ...basis, at: 0, stride: basis.rows };
+  addComplexProductInto(
+    { ...right, at: 0, stride: n },
+    1,
+    displacements,
+    { ...weights, at: 0, stride: k },
+    n,
+    1,
+    k,
+  );
   normaliseInPlace(right);
   return right;
-}
-
-function upperHalves(basis: readonly ComplexVector[], n: number): ComplexMatrix {
-  const out = complexZeros(n, basis.length);
-  basis.forEach((z, k) => {
-    complexColumn(out, k).re.set(z.re.subarray(0, n));
-    complexColumn(out, k).im.set(z.im.subarray(0, n));
-  });
-  return out;
 }
 
 function leadingBlock(h: ComplexMatrix, k: number): ComplexMatrix {

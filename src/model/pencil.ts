@@ -47,9 +47,9 @@ export function applyPencilAdjoint(
   x: ComplexVector,
 ): ComplexVector {
   const y = complexVector(pencil.order);
-  addScaled(y, pencil.mass.addTransposedInto, sRe * sRe - sIm * sIm, -2 * sRe * sIm, x);
-  addScaled(y, pencil.velocity.addTransposedInto, sRe, -sIm, x);
-  addScaled(y, pencil.displacement.addTransposedInto, 1, 0, x);
+  pencil.mass.addTransposedInto(y, sRe * sRe - sIm * sIm, -2 * sRe * sIm, x);
+  pencil.velocity.addTransposedInto(y, sRe, -sIm, x);
+  pencil.displacement.addTransposedInto(y, 1, 0, x);
   return y;
 }
 
@@ -81,24 +81,8 @@ function combine(
   x: ComplexVector,
 ): ComplexVector {
   const y = complexVector(pencil.order);
-  addScaled(y, pencil.mass.addInto, aRe, aIm, x);
-  addScaled(y, pencil.velocity.addInto, bRe, bIm, x);
-  if (c !== 0) addScaled(y, pencil.displacement.addInto, c, 0, x);
+  pencil.mass.addInto(y, aRe, aIm, x);
+  pencil.velocity.addInto(y, bRe, bIm, x);
+  if (c !== 0) pencil.displacement.addInto(y, c, 0, x);
   return y;
-}
-
-/** y ← y + c A x by whichever product of a real operator, A x or Aᵀ x, is handed over. */
-function addScaled(
-  y: ComplexVector,
-  add: RealOperator["addInto"],
-  cRe: number,
-  cIm: number,
-  x: ComplexVector,
-): void {
-  add(y.re, cRe, x.re);
-  add(y.im, cRe, x.im);
-  if (cIm !== 0) {
-    add(y.re, -cIm, x.im);
-    add(y.im, cIm, x.re);
-  }
 }

@@ -1,66 +1,94 @@
 import type { ComplexVector, DenseMatrix } from "./dense/matrix.js";
 import { complexVector } from "./dense/matrix.js";
+import { addRealProductInto, addRealTransposedProductInto } from "./sparse/real-sparse-products.js";
 import type { SparseMatrix } from "./sparse/sparse-matrix.js";
-import { multiplyAddInto, multiplyTransposedAddInto } from "./sparse/sparse-matrix.js";
 
-/** A real matrix A, dense or sparse, known by its products. Arguments must not alias. */
+/** A real matrix A, dense or sparse, known by its products with complex vectors. Arguments must not alias. */
 export interface RealOperator {
   readonly rows: number;
   readonly cols: number;
-  /** y ← y + α A x. */
-  addInto(y: Float64Array, alpha: number, x: Float64Array): void;
-  /** y ← y + α Aᵀ x. */
-  addTransposedInto(y: Float64Array, alpha: number, x: Float64Array): void;
+  /** y ← y + c A x, c = cRe + i cIm. */
+  addInto(y: ComplexVector, cRe: number, cIm: number, x: ComplexVector): void;
+  /** y ← y + c Aᵀ x, c = cRe + i cIm. */
+  addTransposedInto(y: ComplexVector, cRe: number, cIm: number, x: ComplexVector): void;
   /** Largest absolute row or column sum, an upper bound of the 2-norm. */
   readonly normBound: number;
 }
 
 export function sparseOperator(a: SparseMatrix): RealOperator {
+  let normBound: number | undefined;
   return {
     rows: a.rows,
     cols: a.cols,
-    addInto: (y, alpha, x) => multiplyAddInto(y, alpha, a, x),
-    addTransposedInto: (y, alpha, x) => multiplyTransposedAddInto(y, alpha, a, x),
-    normBound: sparseNormBound(a),
+    addInto: (y, cRe, cIm, x) => addRealProductInto(y, cRe, cIm, a, x),
+    addTransposedInto: (y, cRe, cIm, x) => addRealTransposedProductInto(y, cRe, cIm, a, x),
+    get normBound() {
+      normBound ??= sparseNormBound(a);
+      return normBound;
+    },
   };
 }
 
 export function denseOperator(a: DenseMatrix): RealOperator {
-  const { rows, cols, values } = a;
+  let normBound: number | undefined;
   return {
-    rows,
-    cols,
-    addInto: (y, alpha, x) => {
-      for (let j = 0; j < cols; j++) {
-        const scaled = alpha * x[j];
-        for (let i = 0, p = j * rows; i < rows; i++, p++) y[i] += values[p] * scaled;
-      }
+    rows: a.rows,
+    cols: a.cols,
+    addInto: (y, cRe, cIm, x) => addDenseInto(y, cRe, cIm, a, x),
+    addTransposedInto: (y, cRe, cIm, x) => addDenseTransposedInto(y, cRe, cIm, a, x),
+    get normBound() {
+      normBound ??= denseNormBound(a);
+      return normBound;
     },
-    addTransposedInto: (y, alpha, x) => {
-      for (let j = 0; j < cols; j++) {
-        let sum = 0;
-        for (let i = 0, p = j * rows; i < rows; i++, p++) sum += values[p] * x[i];
-        y[j] += alpha * sum;
-      }
-    },
-    normBound: denseNormBound(a),
   };
 }
 
 /** y = A x for complex x, a new vector. */
 export function applyComplex(a: RealOperator, x: ComplexVector): ComplexVector {
   const y = complexVector(a.rows);
-  a.addInto(y.re, 1, x.re);
-  a.addInto(y.im, 1, x.im);
+  a.addInto(y, 1, 0, x);
   return y;
 }
 
 /** y = Aᵀ x for complex x, a new vector (A is real, so Aᵀ = Aᴴ). */
 export function applyComplexTransposed(a: RealOperator, x: ComplexVector): ComplexVector {
   const y = complexVector(a.cols);
-  a.addTransposedInto(y.re, 1, x.re);
-  a.addTransposedInto(y.im, 1, x.im);
+  a.addTransposedInto(y, 1, 0, x);
   return y;
+}
+
+function addDenseInto(y: ComplexVector, cRe: number, cIm: number, a: DenseMatrix, x: ComplexVector): void {
+  const { rows, cols, values } = a;
+  const { re: yRe, im: yIm } = y;
+  for (let j = 0; j < cols; j++) {
+    const re = cRe * x.re[j] - cIm * x.im[j];
+    const im = cRe * x.im[j] + cIm * x.re[j];
+    for (let i = 0, p = j * rows; i < rows; i++, p++) {
+      yRe[i] += values[p] * re;
+      yIm[i] += values[p] * im;
+    }
+  }
+}
+
+function addDenseTransposedInto(
+  y: ComplexVector,
+  cRe: number,
+  cIm: number,
+  a: DenseMatrix,
+  x: ComplexVector,
+): void {
+  const { rows, cols, values } = a;
+  const { re: xRe, im: xIm } = x;
+  for (let j = 0; j < cols; j++) {
+    let re = 0;
+    let im = 0;
+    for (let i = 0, p = j * rows; i < rows; i++, p++) {
+      re += values[p] * xRe[i];
+      im += values[p] * xIm[i];
+    }
+    y.re[j] += cRe * re - cIm * im;
+    y.im[j] += cRe * im + cIm * re;
+  }
 }
 
 function sparseNormBound(a: SparseMatrix): number {

@@ -10,11 +10,13 @@ export function norm2(x: ComplexVector): number {
 
 /** The two parts of yᴴ x. */
 export function innerProduct(y: ComplexVector, x: ComplexVector): { re: number; im: number } {
+  const { re: yRe, im: yIm } = y;
+  const { re: xRe, im: xIm } = x;
   let re = 0;
   let im = 0;
-  for (let i = 0; i < x.re.length; i++) {
-    re += y.re[i] * x.re[i] + y.im[i] * x.im[i];
-    im += y.re[i] * x.im[i] - y.im[i] * x.re[i];
+  for (let i = 0; i < xRe.length; i++) {
+    re += yRe[i] * xRe[i] + yIm[i] * xIm[i];
+    im += yRe[i] * xIm[i] - yIm[i] * xRe[i];
   }
   return { re, im };
 }
@@ -31,9 +33,11 @@ export function scaleInPlace(x: ComplexVector, cRe: number, cIm: number): void {
 
 /** y ← y + (cRe + i cIm) x. */
 export function addScaledInto(y: ComplexVector, cRe: number, cIm: number, x: ComplexVector): void {
-  for (let i = 0; i < x.re.length; i++) {
-    y.re[i] += cRe * x.re[i] - cIm * x.im[i];
-    y.im[i] += cRe * x.im[i] + cIm * x.re[i];
+  const { re: yRe, im: yIm } = y;
+  const { re: xRe, im: xIm } = x;
+  for (let i = 0; i < xRe.length; i++) {
+    yRe[i] += cRe * xRe[i] - cIm * xIm[i];
+    yIm[i] += cRe * xIm[i] + cIm * xRe[i];
   }
 }
 
