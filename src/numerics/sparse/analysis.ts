@@ -6,11 +6,13 @@
  */
 
 import { invariant } from "../../errors.js";
+import { denseLast } from "./dense-vertices.js";
+import { childLists, eliminationTree } from "./elimination-tree.js";
 import { minimumDegree } from "./minimum-degree.js";
 import { nestedDissection } from "./nested-dissection.js";
-import { membersByNode, type NodeGraph, nodeGraph } from "./node-graph.js";
+import { type Graph, membersByNode, type NodeGraph, nodeGraph } from "./node-graph.js";
 import type { SparsePattern } from "./sparse-matrix.js";
-import { type SupernodeTree, supernodeTree } from "./supernodes.js";
+import { type SupernodeTree, supernodesOf } from "./supernodes.js";
 
 /**
  * Fronts are numbered in the order of elimination, children before parents. The front s holds
@@ -62,21 +64,20 @@ export function analyse(pattern: SparsePattern, groups?: Int32Array): SymbolicAn
   };
 }
 
-/** Neither ordering wins everywhere: dissection on wide models, minimum degree on narrow and irregular ones. */
-function cheapestTree(graph: NodeGraph["graph"]): SupernodeTree {
-  const dissected = supernodeTree(graph, nestedDissection(graph));
-  const greedy = supernodeTree(graph, minimumDegree(graph));
-  return greedy.operations < dissected.operations ? greedy : dissected;
+/** Dissection wins on wide models, minimum degree on long narrow ones; it costs a tenth of the dissection. */
+function cheapestTree(graph: Graph): SupernodeTree {
+  const dissected = eliminationTree(graph, denseLast(graph, nestedDissection));
+  const greedy = eliminationTree(graph, denseLast(graph, minimumDegree));
+  return supernodesOf(graph, greedy.operations < dissected.operations ? greedy : dissected);
 }
 
 type FrontDofs = Pick<SymbolicAnalysis, "pivotStart" | "pivots" | "belowStart" | "below">;
 
 function frontDofs({ graph, nodeOf }: NodeGraph, tree: SupernodeTree): FrontDofs {
   const { memberStart, members } = membersByNode(nodeOf, graph.weight);
-  const nodesBelow = verticesBelow(graph, tree);
+  const { nodeStart, nodes } = verticesBelow(graph, tree);
   const pivotStart = new Int32Array(tree.count + 1);
   const pivots = new Int32Array(nodeOf.length);
-  const belowStart = new Int32Array(tree.count + 1);
   let end = 0;
   for (let s = 0; s < tree.count; s++) {
     for (let t = tree.vertexStart[s]; t < tree.vertexStart[s + 1]; t++) {
@@ -84,46 +85,83 @@ function frontDofs({ graph, nodeOf }: NodeGraph, tree: SupernodeTree): FrontDofs
       for (let m = memberStart[v]; m < memberStart[v + 1]; m++) pivots[end++] = members[m];
     }
     pivotStart[s + 1] = end;
+  }
+  const belowStart = new Int32Array(tree.count + 1);
+  for (let s = 0; s < tree.count; s++) {
     belowStart[s + 1] = belowStart[s];
-    for (const v of nodesBelow[s]) belowStart[s + 1] += graph.weight[v];
+    for (let t = nodeStart[s]; t < nodeStart[s + 1]; t++) belowStart[s + 1] += graph.weight[nodes[t]];
   }
   const below = new Int32Array(belowStart[tree.count]);
   end = 0;
-  for (const list of nodesBelow) {
-    for (const v of list) {
-      for (let m = memberStart[v]; m < memberStart[v + 1]; m++) below[end++] = members[m];
-    }
+  for (let t = 0; t < nodeStart[tree.count]; t++) {
+    const v = nodes[t];
+    for (let m = memberStart[v]; m < memberStart[v + 1]; m++) below[end++] = members[m];
   }
   return { pivotStart, pivots, belowStart, below };
 }
 
-/** For each supernode, the later vertices in its columns of L: from its own edges and its children. */
-function verticesBelow(graph: NodeGraph["graph"], tree: SupernodeTree): Int32Array[] {
+/**
+ * For each supernode s the later vertices in its columns of L, from its own edges and its
+ * children, in the order of their elimination: `nodes[nodeStart[s] … nodeStart[s + 1])`.
+ */
+function verticesBelow(
+  graph: Graph,
+  tree: SupernodeTree,
+): { readonly nodeStart: Int32Array; readonly nodes: Int32Array } {
   const { count, parent, vertexStart, vertices } = tree;
+  const { first, next } = childLists(parent);
   const positionOf = new Int32Array(graph.order);
   for (let k = 0; k < vertices.length; k++) positionOf[vertices[k]] = k;
-  const result: Int32Array[] = [];
-  const fromChildren: number[][] = Array.from({ length: count }, () => []);
+  const adjacentPlaces = graph.adjacent.map((u) => positionOf[u]);
+  const nodeStart = new Int32Array(count + 1);
+  let places = new Int32Array(8 * graph.order);
+  const list = new Int32Array(graph.order);
   const seen = new Int32Array(graph.order).fill(-1);
   for (let s = 0; s < count; s++) {
-    const last = vertexStart[s + 1];
-    const list: number[] = [];
-    const enter = (k: number): void => {
-      if (k < last || seen[k] === s) return;
-      seen[k] = s;
-      list.push(k);
-    };
-    for (const k of fromChildren[s]) enter(k);
-    fromChildren[s] = [];
-    for (let t = vertexStart[s]; t < last; t++) {
-      const v = vertices[t];
-      for (let p = graph.start[v]; p < graph.start[v + 1]; p++) enter(positionOf[graph.adjacent[p]]);
+    const end = vertexStart[s + 1];
+    let length = 0;
+    for (let c = first[s]; c >= 0; c = next[c]) {
+      length = enterNew(list, length, seen, s, end, places, nodeStart[c], nodeStart[c + 1]);
     }
-    const sorted = Int32Array.from(list).sort();
-    if (parent[s] >= 0) for (const k of sorted) fromChildren[parent[s]].push(k);
-    result.push(sorted.map((k) => vertices[k]));
+    for (let t = vertexStart[s]; t < end; t++) {
+      const v = vertices[t];
+      length = enterNew(list, length, seen, s, end, adjacentPlaces, graph.start[v], graph.start[v + 1]);
+    }
+    const begin = nodeStart[s];
+    if (begin + length > places.length) places = enlarged(places, begin + length);
+    places.set(list.subarray(0, length).sort(), begin);
+    nodeStart[s + 1] = begin + length;
   }
-  return result;
+  const nodes = places.subarray(0, nodeStart[count]);
+  for (let t = 0; t < nodes.length; t++) nodes[t] = vertices[nodes[t]];
+  return { nodeStart, nodes };
+}
+
+/** Appends the places from `end` on among `source[from … to)` that list s lacks; returns the new length. */
+function enterNew(
+  list: Int32Array,
+  length: number,
+  seen: Int32Array,
+  s: number,
+  end: number,
+  source: Int32Array,
+  from: number,
+  to: number,
+): number {
+  let next = length;
+  for (let t = from; t < to; t++) {
+    const k = source[t];
+    if (k < end || seen[k] === s) continue;
+    seen[k] = s;
+    list[next++] = k;
+  }
+  return next;
+}
+
+function enlarged(array: Int32Array<ArrayBuffer>, least: number): Int32Array<ArrayBuffer> {
+  const larger = new Int32Array(Math.max(least, Math.ceil(1.5 * array.length)));
+  larger.set(array);
+  return larger;
 }
 
 function sizes(

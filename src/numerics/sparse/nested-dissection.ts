@@ -6,20 +6,28 @@
  * Hendrickson & Rothberg, SIAM J. Sci. Comput. 20(2), 1998.
  */
 
+import { createRandom, type Random } from "../random.js";
 import { minimumDegree } from "./minimum-degree.js";
-import type { Graph } from "./node-graph.js";
-import { SEPARATOR, vertexSeparator } from "./vertex-separator.js";
+import { type Graph, inducedGraph } from "./node-graph.js";
+import { vertexSeparator } from "./vertex-separator.js";
 
 /** Parts up to this many vertices are ordered by minimum degree. */
 const SMALL_PART = 200;
 
-/** The vertices in the order of their elimination. */
+/** The vertices in the order of their elimination; equal graphs give equal orders. */
 export function nestedDissection(graph: Graph): Int32Array {
   return new Dissection(graph).order();
 }
 
+/** Part of the graph, with the numbers its vertices have there. */
+interface Piece {
+  readonly graph: Graph;
+  readonly vertices: Int32Array;
+}
+
 class Dissection {
   private readonly graph: Graph;
+  private readonly random: Random = createRandom(1);
   private readonly result: Int32Array;
   private done = 0;
   private readonly local: Int32Array;
@@ -31,112 +39,127 @@ class Dissection {
   }
 
   order(): Int32Array {
-    this.dissect(Int32Array.from({ length: this.graph.order }, (_, v) => v));
+    const vertices = Int32Array.from({ length: this.graph.order }, (_, v) => v);
+    this.dissect({ graph: this.graph, vertices });
     return this.result;
   }
 
-  private append(vertices: ArrayLike<number>): void {
-    for (let t = 0; t < vertices.length; t++) this.result[this.done++] = vertices[t];
+  private append(vertices: Int32Array): void {
+    this.result.set(vertices, this.done);
+    this.done += vertices.length;
   }
 
-  private dissect(vertices: Int32Array): void {
-    if (vertices.length <= SMALL_PART) {
+  private dissect(piece: Piece): void {
+    const { graph, vertices } = piece;
+    if (graph.order <= SMALL_PART) {
       this.orderSmall(vertices);
       return;
     }
-    const sub = this.induced(vertices, vertices.length);
-    const components = connectedComponents(sub);
-    if (components.length > 1) {
-      this.dissectComponents(vertices, components);
+    const { componentOf, count } = connectedComponents(graph);
+    if (count > 1) {
+      this.dissectComponents(piece, componentOf, count);
       return;
     }
-    const part = vertexSeparator(sub);
-    const zero = vertices.filter((_, t) => part[t] === 0);
-    const one = vertices.filter((_, t) => part[t] === 1);
+    const part = vertexSeparator(graph, this.random);
+    const [zero, one, separator] = split(part, 3);
     if (zero.length === 0 || one.length === 0) {
       this.orderSmall(vertices);
       return;
     }
-    this.dissect(zero);
-    this.dissect(one);
-    this.append(vertices.filter((_, t) => part[t] === SEPARATOR));
+    this.dissect(this.piece(piece, zero));
+    this.dissect(this.piece(piece, one));
+    this.append(separator.map((t) => vertices[t]));
   }
 
   /** Crumbs are ordered in one go, so that a thousand loose vertices cost no thousand calls. */
-  private dissectComponents(vertices: Int32Array, components: readonly Int32Array[]): void {
-    const crumbs: number[] = [];
-    for (const component of components) {
-      const own = component.map((t) => vertices[t]);
-      if (own.length > SMALL_PART) this.dissect(own);
-      else for (const v of own) crumbs.push(v);
+  private dissectComponents(piece: Piece, componentOf: Int32Array, count: number): void {
+    const crumbs: Int32Array[] = [];
+    for (const own of split(componentOf, count)) {
+      if (own.length > SMALL_PART) this.dissect(this.piece(piece, own));
+      else crumbs.push(own);
     }
-    this.orderSmall(Int32Array.from(crumbs));
+    const together = new Int32Array(crumbs.reduce((sum, own) => sum + own.length, 0));
+    let end = 0;
+    for (const own of crumbs) for (const t of own) together[end++] = piece.vertices[t];
+    this.orderSmall(together);
   }
 
+  /** By minimum degree, with the neighbours outside in sight. */
   private orderSmall(vertices: Int32Array): void {
     if (vertices.length === 0) return;
-    const { start, adjacent } = this.graph;
-    for (const v of vertices) this.local[v] = 0;
-    const all = Array.from(vertices);
-    for (const v of vertices) {
-      for (let p = start[v]; p < start[v + 1]; p++) {
-        if (this.local[adjacent[p]] >= 0) continue;
-        this.local[adjacent[p]] = 0;
-        all.push(adjacent[p]);
-      }
-    }
-    for (const v of all) this.local[v] = -1;
-    const sub = this.induced(Int32Array.from(all), all.length);
+    const sub = this.withBorder(vertices);
     this.append(minimumDegree(sub, vertices.length).map((t) => vertices[t]));
   }
 
-  /** The graph of these vertices and the edges among them. */
-  private induced(vertices: Int32Array, count: number): Graph {
+  /** The graph of these vertices and, numbered after them, their neighbours; without edges among the latter. */
+  private withBorder(vertices: Int32Array): Graph {
     const { start, adjacent, weight } = this.graph;
     const { local } = this;
-    let edges = 0;
-    for (let t = 0; t < count; t++) {
-      local[vertices[t]] = t;
-      edges += start[vertices[t] + 1] - start[vertices[t]];
-    }
-    const subStart = new Int32Array(count + 1);
-    const subAdjacent = new Int32Array(edges);
-    const subWeight = new Int32Array(count);
-    let end = 0;
-    for (let t = 0; t < count; t++) {
-      const v = vertices[t];
-      subWeight[t] = weight[v];
-      for (let p = start[v]; p < start[v + 1]; p++) {
-        if (local[adjacent[p]] >= 0) subAdjacent[end++] = local[adjacent[p]];
+    const interior = vertices.length;
+    const all = Array.from(vertices);
+    const degree = all.map((v) => start[v + 1] - start[v]);
+    for (let t = 0; t < interior; t++) local[all[t]] = t;
+    for (let t = 0; t < interior; t++) {
+      for (let p = start[all[t]]; p < start[all[t] + 1]; p++) {
+        const u = adjacent[p];
+        if (local[u] < 0) {
+          local[u] = all.length;
+          all.push(u);
+          degree.push(0);
+        }
+        if (local[u] >= interior) degree[local[u]]++;
       }
-      subStart[t + 1] = end;
     }
-    for (let t = 0; t < count; t++) local[vertices[t]] = -1;
-    return { order: count, start: subStart, adjacent: subAdjacent.slice(0, end), weight: subWeight };
+    const order = all.length;
+    const subStart = new Int32Array(order + 1);
+    for (let t = 0; t < order; t++) subStart[t + 1] = subStart[t] + degree[t];
+    const next = subStart.slice(0, order);
+    const subAdjacent = new Int32Array(subStart[order]);
+    for (let t = 0; t < interior; t++) {
+      for (let p = start[all[t]]; p < start[all[t] + 1]; p++) {
+        const u = local[adjacent[p]];
+        subAdjacent[next[t]++] = u;
+        if (u >= interior) subAdjacent[next[u]++] = t;
+      }
+    }
+    for (const v of all) local[v] = -1;
+    return { order, start: subStart, adjacent: subAdjacent, weight: Int32Array.from(all, (v) => weight[v]) };
+  }
+
+  private piece({ graph, vertices }: Piece, chosen: Int32Array): Piece {
+    return { graph: inducedGraph(graph, chosen, this.local), vertices: chosen.map((t) => vertices[t]) };
   }
 }
 
-function connectedComponents(graph: Graph): Int32Array[] {
+/** The positions of every class, ascending. */
+function split(classOf: ArrayLike<number>, classes: number): Int32Array[] {
+  const size = new Int32Array(classes);
+  for (let t = 0; t < classOf.length; t++) size[classOf[t]]++;
+  const members = Array.from(size, (count) => new Int32Array(count));
+  size.fill(0);
+  for (let t = 0; t < classOf.length; t++) members[classOf[t]][size[classOf[t]]++] = t;
+  return members;
+}
+
+function connectedComponents(graph: Graph): { readonly componentOf: Int32Array; readonly count: number } {
   const { order, start, adjacent } = graph;
-  const seen = new Uint8Array(order);
+  const componentOf = new Int32Array(order).fill(-1);
   const queue = new Int32Array(order);
-  const components: Int32Array[] = [];
-  let end = 0;
+  let count = 0;
   for (let seed = 0; seed < order; seed++) {
-    if (seen[seed] === 1) continue;
-    const begin = end;
-    seen[seed] = 1;
-    queue[end++] = seed;
-    for (let read = begin; read < end; read++) {
+    if (componentOf[seed] >= 0) continue;
+    componentOf[seed] = count;
+    queue[0] = seed;
+    for (let read = 0, end = 1; read < end; read++) {
       const v = queue[read];
       for (let p = start[v]; p < start[v + 1]; p++) {
         const u = adjacent[p];
-        if (seen[u] === 1) continue;
-        seen[u] = 1;
+        if (componentOf[u] >= 0) continue;
+        componentOf[u] = count;
         queue[end++] = u;
       }
     }
-    components.push(queue.slice(begin, end));
+    count++;
   }
-  return components;
+  return { componentOf, count };
 }

@@ -44,19 +44,26 @@ function consecutive(groups: Int32Array): Int32Array {
 function indistinguishable(pattern: SparsePattern): Int32Array {
   const { cols, colStart, rowIndex } = pattern;
   const nodeOf = new Int32Array(cols);
-  const candidates = new Map<number, number[]>();
+  const hashOf = new Int32Array(cols);
+  // Chains of columns that were first of their kind, by the low bits of their hashes.
+  const buckets = 2 ** Math.ceil(Math.log2(cols + 1));
+  const first = new Int32Array(buckets).fill(-1);
+  const next = new Int32Array(cols).fill(-1);
   let nodes = 0;
   for (let j = 0; j < cols; j++) {
     let hash = colStart[j + 1] - colStart[j];
     for (let p = colStart[j]; p < colStart[j + 1]; p++) hash = (Math.imul(hash, 31) + rowIndex[p]) | 0;
-    const alike = candidates.get(hash) ?? [];
-    const twin = alike.find((i) => sameColumn(pattern, i, j));
-    if (twin === undefined) {
-      nodeOf[j] = nodes++;
-      alike.push(j);
-      candidates.set(hash, alike);
-    } else {
+    hash ^= hash >>> 15;
+    hashOf[j] = hash;
+    const bucket = hash & (buckets - 1);
+    let twin = first[bucket];
+    while (twin >= 0 && (hashOf[twin] !== hash || !sameColumn(pattern, twin, j))) twin = next[twin];
+    if (twin >= 0) {
       nodeOf[j] = nodeOf[twin];
+    } else {
+      nodeOf[j] = nodes++;
+      next[j] = first[bucket];
+      first[bucket] = j;
     }
   }
   return nodeOf;
@@ -97,6 +104,36 @@ function quotient(pattern: SparsePattern, nodeOf: Int32Array): Graph {
     start[v + 1] = end;
   }
   return { order, start, adjacent: adjacent.slice(0, end), weight };
+}
+
+/**
+ * The graph of some vertices and the edges among them.
+ *
+ * @param numberOf - Scratch of the order of `graph`, all −1 before and after.
+ */
+export function inducedGraph(graph: Graph, vertices: Int32Array, numberOf: Int32Array): Graph {
+  const { start, adjacent, weight } = graph;
+  const order = vertices.length;
+  let edges = 0;
+  for (let t = 0; t < order; t++) {
+    numberOf[vertices[t]] = t;
+    edges += start[vertices[t] + 1] - start[vertices[t]];
+  }
+  const subStart = new Int32Array(order + 1);
+  const subAdjacent = new Int32Array(edges);
+  const subWeight = new Int32Array(order);
+  let end = 0;
+  for (let t = 0; t < order; t++) {
+    const v = vertices[t];
+    subWeight[t] = weight[v];
+    for (let p = start[v]; p < start[v + 1]; p++) {
+      const u = numberOf[adjacent[p]];
+      if (u >= 0) subAdjacent[end++] = u;
+    }
+    subStart[t + 1] = end;
+  }
+  for (let t = 0; t < order; t++) numberOf[vertices[t]] = -1;
+  return { order, start: subStart, adjacent: subAdjacent.slice(0, end), weight: subWeight };
 }
 
 /** The dofs of each node, ascending. */

@@ -1,11 +1,12 @@
 /**
- * From an elimination order to the tree of dense fronts: elimination tree, column counts,
- * and supernodes, joined with their parents where few stored zeros result.
+ * From an elimination order to the tree of dense fronts: columns joined with their parents
+ * where few stored zeros result, in an order that keeps the stack of updates low.
  *
- * Sources: Liu, SIAM J. Matrix Anal. Appl. 11(1), 1990 (elimination tree, postorder for
- * least stack); Ashcraft & Grimes, ACM TOMS 15(4), 1989 (relaxed supernodes).
+ * Sources: Ashcraft & Grimes, ACM TOMS 15(4), 1989 (relaxed supernodes); Liu, ACM TOMS 12(3),
+ * 1986 (postorder for least stack).
  */
 
+import { childLists, type EliminationTree, eliminationTree } from "./elimination-tree.js";
 import type { Graph } from "./node-graph.js";
 
 /** The supernodes in the order of their elimination, children before parents. */
@@ -16,64 +17,17 @@ export interface SupernodeTree {
   /** The vertices of supernode s, in elimination order, are `vertices[vertexStart[s] … vertexStart[s + 1])`. */
   readonly vertexStart: Int32Array;
   readonly vertices: Int32Array;
-  /** Sum of the squared column lengths of L, to compare orders by. */
+  /** Sum of the squared column lengths of L over the dofs, stored zeros left out, to compare orders by. */
   readonly operations: number;
 }
 
 /** @param order - The vertices of the graph in the order of their elimination. */
 export function supernodeTree(graph: Graph, order: Int32Array): SupernodeTree {
-  const positionOf = new Int32Array(graph.order);
-  for (let k = 0; k < order.length; k++) positionOf[order[k]] = k;
-  const parent = eliminationTree(graph, order, positionOf);
-  const count = columnWeights(graph, order, positionOf, parent);
-  return new Amalgamation(graph, order, parent, count).tree();
+  return supernodesOf(graph, eliminationTree(graph, order));
 }
 
-/** Parent of every column: the row of its first entry below the diagonal of L. */
-function eliminationTree(graph: Graph, order: Int32Array, positionOf: Int32Array): Int32Array {
-  const n = graph.order;
-  const parent = new Int32Array(n).fill(-1);
-  const ancestor = new Int32Array(n).fill(-1);
-  for (let k = 0; k < n; k++) {
-    const v = order[k];
-    for (let p = graph.start[v]; p < graph.start[v + 1]; p++) {
-      let i = positionOf[graph.adjacent[p]];
-      while (i >= 0 && i < k) {
-        const next = ancestor[i];
-        ancestor[i] = k;
-        if (next < 0) parent[i] = k;
-        i = next;
-      }
-    }
-  }
-  return parent;
-}
-
-/** Dofs in every column of L, by walking the row subtrees; O(vertices in L). */
-function columnWeights(
-  graph: Graph,
-  order: Int32Array,
-  positionOf: Int32Array,
-  parent: Int32Array,
-): Float64Array {
-  const n = graph.order;
-  const count = new Float64Array(n);
-  const reached = new Int32Array(n).fill(-1);
-  for (let k = 0; k < n; k++) {
-    const v = order[k];
-    const w = graph.weight[v];
-    reached[k] = k;
-    count[k] += w;
-    for (let p = graph.start[v]; p < graph.start[v + 1]; p++) {
-      let i = positionOf[graph.adjacent[p]];
-      while (i < k && reached[i] !== k) {
-        reached[i] = k;
-        count[i] += w;
-        i = parent[i];
-      }
-    }
-  }
-  return count;
+export function supernodesOf(graph: Graph, tree: EliminationTree): SupernodeTree {
+  return new Amalgamation(graph, tree).tree();
 }
 
 /** Entries of a column block: p columns in a front of order f, lower trapezoid. */
@@ -89,37 +43,53 @@ function allowedZeros(p: number): number {
 }
 
 class Amalgamation {
-  private readonly order: Int32Array;
+  private readonly elimination: EliminationTree;
   private readonly n: number;
-  private readonly parent: Int32Array;
   /** Dofs eliminated in the supernode that column k heads, its front, and the zeros it stores. */
   private readonly pivots: Float64Array;
   private readonly front: Float64Array;
   private readonly zeros: Float64Array;
   /** Column that took column k over, or k. */
   private readonly host: Int32Array;
-  private readonly operations: number;
+  /** Children of one column at a time. */
+  private readonly family: Int32Array;
 
-  constructor(graph: Graph, order: Int32Array, parent: Int32Array, count: Float64Array) {
-    this.order = order;
-    this.n = graph.order;
-    this.parent = parent;
-    this.front = Float64Array.from(count);
-    this.pivots = Float64Array.from(order, (v) => graph.weight[v]);
-    this.zeros = new Float64Array(this.n);
-    this.host = Int32Array.from(order, (_, k) => k);
-    this.operations = count.reduce((sum, length, k) => sum + graph.weight[order[k]] * length * length, 0);
+  constructor(graph: Graph, elimination: EliminationTree) {
+    const n = graph.order;
+    this.n = n;
+    this.elimination = elimination;
+    this.front = elimination.length.slice();
+    this.pivots = new Float64Array(n);
+    this.zeros = new Float64Array(n);
+    this.host = new Int32Array(n);
+    this.family = new Int32Array(n);
+    for (let k = 0; k < n; k++) {
+      this.pivots[k] = graph.weight[elimination.order[k]];
+      this.host[k] = k;
+    }
   }
 
   tree(): SupernodeTree {
-    const children = childLists(this.parent);
+    const { front, pivots } = this;
+    const children = childLists(this.elimination.parent);
+    // Children with the largest remainder first: they share most with the parent.
+    const byRemainder = (a: number, b: number): number => front[b] - pivots[b] - front[a] + pivots[a];
     for (let k = 0; k < this.n; k++) {
-      // Children with the largest remainder first: they share most with the parent.
-      const remainder = (c: number) => this.front[c] - this.pivots[c];
-      const candidates = children[k].sort((a, b) => remainder(b) - remainder(a));
-      for (const c of candidates) this.tryToJoin(c, k);
+      for (const c of this.sortedFamily(children.first[k], children.next, byRemainder)) this.tryToJoin(c, k);
     }
-    return this.postordered();
+    return this.supernodes();
+  }
+
+  /** The list from `first` on, sorted; valid until the next call. */
+  private sortedFamily(
+    first: number,
+    next: Int32Array,
+    compare: (a: number, b: number) => number,
+  ): Int32Array {
+    let count = 0;
+    for (let c = first; c >= 0; c = next[c]) this.family[count++] = c;
+    const family = this.family.subarray(0, count);
+    return count > 1 ? family.sort(compare) : family;
   }
 
   private tryToJoin(child: number, host: number): void {
@@ -139,65 +109,73 @@ class Amalgamation {
     this.host[child] = host;
   }
 
-  private postordered(): SupernodeTree {
-    const { n, parent } = this;
-    const hostOf = new Int32Array(n);
-    const members: number[][] = Array.from({ length: n }, () => []);
-    for (let k = n - 1; k >= 0; k--) hostOf[k] = this.host[k] === k ? k : hostOf[this.host[k]];
-    for (let k = 0; k < n; k++) members[hostOf[k]].push(this.order[k]);
+  private supernodes(): SupernodeTree {
+    const { n, host } = this;
+    const { order, parent, operations } = this.elimination;
+    // A host stands after the columns it took over, so one pass downwards finds the final hosts.
+    for (let k = n - 1; k >= 0; k--) host[k] = host[host[k]];
     const above = new Int32Array(n).fill(-1);
-    for (let k = 0; k < n; k++) if (hostOf[k] === k && parent[k] >= 0) above[k] = hostOf[parent[k]];
-    const sequence = this.leastStackPostorder(hostOf, above);
-
-    const count = sequence.length;
-    const numberOf = new Int32Array(n).fill(-1);
-    sequence.forEach((k, s) => {
-      numberOf[k] = s;
-    });
-    const vertexStart = new Int32Array(count + 1);
-    const vertices = new Int32Array(n);
-    const treeParent = new Int32Array(count).fill(-1);
-    for (let s = 0; s < count; s++) {
-      const k = sequence[s];
-      vertices.set(members[k], vertexStart[s]);
-      vertexStart[s + 1] = vertexStart[s] + members[k].length;
-      if (above[k] >= 0) treeParent[s] = numberOf[above[k]];
+    const members = new Int32Array(n);
+    for (let k = 0; k < n; k++) {
+      members[host[k]]++;
+      if (host[k] === k && parent[k] >= 0) above[k] = host[parent[k]];
     }
-    return { count, parent: treeParent, vertexStart, vertices, operations: this.operations };
+    const sequence = this.leastStackPostorder(above);
+    const count = sequence.length;
+    const numberOf = new Int32Array(n);
+    const vertexStart = new Int32Array(count + 1);
+    for (let s = 0; s < count; s++) {
+      numberOf[sequence[s]] = s;
+      vertexStart[s + 1] = vertexStart[s] + members[sequence[s]];
+    }
+    const treeParent = new Int32Array(count);
+    for (let s = 0; s < count; s++)
+      treeParent[s] = above[sequence[s]] < 0 ? -1 : numberOf[above[sequence[s]]];
+    const vertices = new Int32Array(n);
+    const next = vertexStart.slice(0, count);
+    for (let k = 0; k < n; k++) vertices[next[numberOf[host[k]]]++] = order[k];
+    return { count, parent: treeParent, vertexStart, vertices, operations };
   }
 
-  /** Children whose subtrees need the most room beyond what they leave behind go first. */
-  private leastStackPostorder(hostOf: Int32Array, above: Int32Array): number[] {
-    const { n } = this;
-    const children = childLists(above);
+  /** Hosts, children first; children whose subtrees need the most room beyond what they leave go first. */
+  private leastStackPostorder(above: Int32Array): Int32Array {
+    const { n, host } = this;
+    const { first, next } = childLists(above);
     const peak = new Float64Array(n);
     const left = new Float64Array(n);
+    const byRoom = (a: number, b: number): number => peak[b] - left[b] - peak[a] + left[a];
+    let hosts = 0;
     for (let k = 0; k < n; k++) {
-      if (hostOf[k] !== k) continue;
+      if (host[k] !== k) continue;
+      hosts++;
       left[k] = (this.front[k] - this.pivots[k]) ** 2;
-      children[k].sort((a, b) => peak[b] - left[b] - (peak[a] - left[a]));
       let held = 0;
-      for (const c of children[k]) {
+      let last = -1;
+      for (const c of this.sortedFamily(first[k], next, byRoom)) {
         peak[k] = Math.max(peak[k], held + peak[c]);
         held += left[c];
+        if (last < 0) first[k] = c;
+        else next[last] = c;
+        next[c] = -1;
+        last = c;
       }
       peak[k] = Math.max(peak[k], held, left[k]);
     }
-    const sequence: number[] = [];
-    const stack: number[] = [];
-    for (let k = n - 1; k >= 0; k--) if (hostOf[k] === k && above[k] < 0) stack.push(k);
-    // Parents before children and children from last to first, then reversed.
-    stack.reverse();
-    for (let k = stack.pop(); k !== undefined; k = stack.pop()) {
-      sequence.push(k);
-      for (const c of children[k]) stack.push(c);
-    }
-    return sequence.reverse();
+    return this.childrenFirst(hosts, above, first, next);
   }
-}
 
-function childLists(parent: Int32Array): number[][] {
-  const lists: number[][] = Array.from({ length: parent.length }, () => []);
-  for (let k = 0; k < parent.length; k++) if (parent[k] >= 0) lists[parent[k]].push(k);
-  return lists;
+  private childrenFirst(hosts: number, above: Int32Array, first: Int32Array, next: Int32Array): Int32Array {
+    const sequence = new Int32Array(hosts);
+    // Filled from the end: parents, then their children from last to first.
+    const stack = this.family;
+    let waiting = 0;
+    let place = hosts;
+    for (let k = 0; k < this.n; k++) if (this.host[k] === k && above[k] < 0) stack[waiting++] = k;
+    while (waiting > 0) {
+      const k = stack[--waiting];
+      sequence[--place] = k;
+      for (let c = first[k]; c >= 0; c = next[c]) stack[waiting++] = c;
+    }
+    return sequence;
+  }
 }
