@@ -2,7 +2,13 @@ import type { ModelState } from "../model/parametric-model.js";
 import type { AdaptiveModel } from "../reduction/adaptive-model.js";
 import { inBand } from "./band.js";
 import type { Setting } from "./measure.js";
-import { type NearbyEigenvalue, type Neighbourhood, nearbyEigenvalues } from "./nearby-eigenvalues.js";
+import {
+  type DiscEffort,
+  discDefaults,
+  type NearbyEigenvalue,
+  type Neighbourhood,
+  nearbyEigenvalues,
+} from "./nearby-eigenvalues.js";
 import { dampingRatio, isUnstable } from "./stability.js";
 
 /** An eigenvalue with Im ≥ 0 [1/s, rad/s]. */
@@ -34,11 +40,14 @@ const suspicious = 1e-3;
 /** Unstable modes just outside the band are common: they are looked for up to here. */
 export const outsideReach = 1.3;
 const mostShifts = 120;
+/** Some of them are left for suspects off the axis. */
+const mostOnAxis = 100;
+/** Where a disc does not reach back to the one before, more steps are cheaper than another factorisation. */
+const alongAxis = { steps: 36, mostSteps: 72 };
 
 /**
- * Confirms or refutes every reduced eigenvalue that is unstable or nearly so (ζ < 1e-3) by
- * shift-and-invert Arnoldi on the full model, then covers the rest of the axis in the same way: what the reduced
- * model missed is found too.
+ * Covers the imaginary axis by shift-and-invert Arnoldi on the full model, so that what the reduced model missed is
+ * found, and confirms or refutes every reduced eigenvalue that is unstable or nearly so (ζ < 1e-3) in the same way.
  */
 export function judgeStability(
   adaptive: AdaptiveModel,
@@ -64,7 +73,7 @@ function isSuspect(setting: Setting): (value: Eigenvalue) => boolean {
   return ({ re, im }) => isUnstable(re, im, setting.shift) || dampingRatio(re, im) < suspicious;
 }
 
-/** Arnoldi runs along the axis until every suspect lies inside an examined disc. */
+/** Discs along the axis, then round every suspect that none of them holds. */
 function coverSuspects(
   adaptive: AdaptiveModel,
   state: ModelState,
@@ -74,43 +83,39 @@ function coverSuspects(
 ): { neighbourhoods: Neighbourhood[]; open: Eigenvalue[]; walked: boolean } {
   const pencil = adaptive.full.pencilAt(state);
   const neighbourhoods: Neighbourhood[] = [];
-  const open: Eigenvalue[] = [];
-  const examine = (re: number, im: number) => {
-    const area = nearbyEigenvalues(pencil, pencil.factor(re, im), setting.shift, neighbourhoods.length + 1);
+  const examine: Examine = (re, im, effort) => {
+    const seed = neighbourhoods.length + 1;
+    const area = nearbyEigenvalues(pencil, pencil.factor(re, im), setting.shift, seed, effort);
     neighbourhoods.push(area);
     return area.radius;
   };
-  let stride = 0;
-  for (const suspect of suspects) {
+  const walked = walkAxis(neighbourhoods, setting, reach, examine);
+  const open = suspects.filter((suspect) => {
     const covered = () => neighbourhoods.some((area) => covers(area, suspect));
-    if (covered()) continue;
-    if (neighbourhoods.length >= mostShifts) {
-      open.push(suspect);
-      continue;
+    if (!covered() && neighbourhoods.length < mostShifts) {
+      examine(suspect.re, suspect.im * (1 + 1e-5) + 1e-6 * setting.shift, discDefaults);
     }
-    // A little beyond the suspect, so that the next ones fall into the same disc.
-    const ahead = Number.isFinite(stride) ? 0.7 * stride : 0;
-    stride = examine(0, suspect.im + Math.max(ahead, 1e-3 * Math.max(suspect.im, 1e-2 * setting.shift)));
-    if (!covered()) examine(suspect.re, suspect.im * (1 + 1e-5) + 1e-6 * setting.shift);
-    if (!covered()) open.push(suspect);
-  }
-  return { neighbourhoods, open, walked: walkAxis(neighbourhoods, setting, reach, examine) };
+    return !covered();
+  });
+  return { neighbourhoods, open, walked };
 }
 
+/** Adds the disc round a shift and returns its radius. */
+type Examine = (re: number, im: number, effort: DiscEffort) => number;
+
 /**
- * Covers the rest of the axis up to `reach` with discs: an unstable eigenvalue that the reduced model knows nothing
- * of has no suspect beside it. False when the discs ran out.
+ * Covers the axis up to `reach` with discs: most suspects lie in them, and so does an unstable eigenvalue that the
+ * reduced model knows nothing of. False when the discs ran out.
  */
 function walkAxis(
   neighbourhoods: readonly Neighbourhood[],
   setting: Setting,
   reach: number,
-  examine: (re: number, im: number) => number,
+  examine: Examine,
 ): boolean {
   // Where discs overlap by a tenth, they cover a strip beside the axis too.
-  const topOf = ({ shiftRe, shiftIm, radius }: Neighbourhood) =>
-    shiftIm + Math.sqrt(Math.max(0, (0.9 * radius) ** 2 - shiftRe ** 2));
-  let stride = 0.02 * reach;
+  const topOf = ({ shiftIm, radius }: Neighbourhood) => shiftIm + 0.9 * radius;
+  let stride = 0.04 * reach;
   for (let at = 0; at < reach; ) {
     const over = neighbourhoods.filter((area) => covers(area, { re: 0, im: at })).map(topOf);
     const next = over.reduce((high, top) => Math.max(high, top), at);
@@ -118,9 +123,10 @@ function walkAxis(
       at = next;
       continue;
     }
-    if (neighbourhoods.length >= mostShifts) return false;
-    const centre = Math.max(at + 0.8 * stride, 1e-3 * setting.shift);
-    const radius = examine(0, centre);
+    if (neighbourhoods.length >= mostOnAxis) return false;
+    const ahead = Math.min(0.8 * stride, 0.5 * (reach - at));
+    const centre = Math.max(at + ahead, 1e-3 * setting.shift);
+    const radius = examine(0, centre, { ...alongAxis, reach: (centre - at) / 0.89 });
     // Too far ahead: a shorter stride closes the gap.
     stride = centre - 0.9 * radius > at ? 0.5 * Math.min(stride, radius) : radius;
   }

@@ -2,17 +2,10 @@ import type { Pencil, PencilFactor } from "../model/pencil.js";
 import { applyPencil, pencilNorm } from "../model/pencil.js";
 import { addComplexProductInto } from "../numerics/dense/complex-block-kernels.js";
 import { complexEigenvalues } from "../numerics/dense/complex-eigen.js";
-import { orthogonaliseInPlace } from "../numerics/dense/complex-gram-schmidt.js";
 import { norm2, normaliseInPlace } from "../numerics/dense/complex-vectors.js";
 import { factorDenseComplex } from "../numerics/dense/lu.js";
-import {
-  type ComplexMatrix,
-  type ComplexVector,
-  complexColumn,
-  complexVector,
-  complexZeros,
-} from "../numerics/dense/matrix.js";
-import { createRandom } from "../numerics/random.js";
+import { type ComplexMatrix, type ComplexVector, complexVector } from "../numerics/dense/matrix.js";
+import { CompanionKrylov } from "./companion-krylov.js";
 import { asColumn } from "./eigenpair.js";
 
 /** One eigenvalue found near a shift, with its right vector (unit length) and its residual. */
@@ -33,9 +26,21 @@ export interface Neighbourhood {
   readonly eigenvalues: readonly NearbyEigenvalue[];
 }
 
-/** Solves for one disc where nothing else is asked for. */
-const usualSteps = 28;
 const converged = 1e-9;
+/** Solves between two looks at a disc that does not reach as far as it should. */
+const stride = 8;
+
+/** How much is spent on one disc. */
+export interface DiscEffort {
+  /** Solves, so the dimension of the Krylov space. */
+  readonly steps: number;
+  /** More of them follow until the disc has this radius [rad/s] … */
+  readonly reach: number;
+  /** … or so many were made. */
+  readonly mostSteps: number;
+}
+
+export const discDefaults: DiscEffort = { steps: 28, reach: 0, mostSteps: 28 };
 
 /**
  * Eigenvalues of P nearest to a shift σ by shift-and-invert Arnoldi on the first companion form, one
@@ -43,7 +48,6 @@ const converged = 1e-9;
  * a judgement of the full model by itself.
  *
  * @param scale - s₀ [rad/s] that makes the two halves of the companion vector comparable.
- * @param steps - Solves, so the dimension of the Krylov space: more of them make a wider disc.
  *
  * Source: Tisseur & Meerbergen, SIAM Review 43 (2001) §5; Saad, Numerical Methods for Large Eigenvalue Problems, ch. 6.
  */
@@ -52,10 +56,22 @@ export function nearbyEigenvalues(
   factor: PencilFactor,
   scale: number,
   seed: number,
-  steps: number = usualSteps,
+  { steps, reach, mostSteps }: DiscEffort = discDefaults,
 ): Neighbourhood {
-  const space = krylovSpace(pencil, factor, scale, seed, steps);
-  const theta = complexEigenvalues(space.hessenberg);
+  const space = new CompanionKrylov(pencil, factor, scale, seed, mostSteps);
+  space.expand(steps);
+  let area = convergedAround(pencil, factor, space);
+  while (area.radius < reach && !space.exhausted && !space.full) {
+    space.expand(stride);
+    area = convergedAround(pencil, factor, space);
+  }
+  return area;
+}
+
+/** The Ritz values nearest to the shift up to the first one that has not converged. */
+function convergedAround(pencil: Pencil, factor: PencilFactor, space: CompanionKrylov): Neighbourhood {
+  const hessenberg = space.hessenberg();
+  const theta = complexEigenvalues(hessenberg);
   const order = Array.from(theta.re.keys()).sort(
     (a, b) => Math.hypot(theta.re[b], theta.im[b]) - Math.hypot(theta.re[a], theta.im[a]),
   );
@@ -66,7 +82,7 @@ export function nearbyEigenvalues(
     if (size2 === 0) break;
     const re = factor.sRe + theta.re[j] / size2;
     const im = factor.sIm - theta.im[j] / size2;
-    const right = ritzVector(space, theta.re[j], theta.im[j]);
+    const right = ritzVector(space.basis, hessenberg, theta.re[j], theta.im[j]);
     const residual = norm2(applyPencil(pencil, re, im, right)) / pencilNorm(pencil, re, im);
     if (residual > converged) {
       // What this Ritz value stands for may lie nearer than it does, all the more where nothing has converged yet.
@@ -83,94 +99,13 @@ export function nearbyEigenvalues(
   return { shiftRe: factor.sRe, shiftIm: factor.sIm, radius, eigenvalues };
 }
 
-interface KrylovSpace {
-  /** The basis, one column more than `hessenberg` has, at least: displacements above velocities over s₀, 2n rows. */
-  readonly basis: ComplexMatrix;
-  readonly hessenberg: ComplexMatrix;
-  /** The space closed: its eigenvalues are all there are. */
-  readonly exhausted: boolean;
-}
-
-function krylovSpace(
-  pencil: Pencil,
-  factor: PencilFactor,
-  scale: number,
-  seed: number,
-  steps: number,
-): KrylovSpace {
-  const rows = 2 * pencil.order;
-  const most = Math.min(steps, rows);
-  const v = complexZeros(rows, most + 1);
-  const h = complexZeros(most, most);
-  const room = roomFor(pencil.order);
-  const random = createRandom(seed);
-  const start = complexVector(rows);
-  for (let i = 0; i < rows; i++) start.re[i] = random.normal();
-  // Pushed through the operator once: the start then has no part in the infinite eigenvalues.
-  applyOperatorInto(complexColumn(v, 0), pencil, factor, scale, start, room);
-  normaliseInPlace(complexColumn(v, 0));
-  let exhausted = most === rows;
-  let k = 0;
-  while (k < most) {
-    const next = complexColumn(v, k + 1);
-    applyOperatorInto(next, pencil, factor, scale, complexColumn(v, k), room);
-    const before = norm2(next);
-    k++;
-    orthogonaliseInPlace(next, v, k, complexColumn(h, k - 1));
-    const left = normaliseInPlace(next);
-    if (left <= 1e-13 * before) {
-      exhausted = true;
-      break;
-    }
-    if (k < most) h.re[k + (k - 1) * most] = left;
-  }
-  return { basis: v, hessenberg: leadingBlock(h, k), exhausted };
-}
-
-/** Vectors of length n that every step uses anew. */
-interface Room {
-  readonly sum: ComplexVector;
-  readonly load: ComplexVector;
-}
-
-function roomFor(n: number): Room {
-  return { sum: complexVector(n), load: complexVector(n) };
-}
-
-/** out ← (A − σE)⁻¹ E z with z = [q; q̇/s₀]: x = −P(σ)⁻¹(M z₂ s₀ + (C + σM) z₁), then [x; (z₁ + σx)/s₀]. */
-function applyOperatorInto(
-  out: ComplexVector,
-  pencil: Pencil,
-  factor: PencilFactor,
-  scale: number,
-  z: ComplexVector,
-  { sum, load }: Room,
-): void {
-  const n = pencil.order;
-  const { sRe, sIm } = factor;
-  const { re: zRe, im: zIm } = z;
-  for (let i = 0; i < n; i++) {
-    sum.re[i] = scale * zRe[n + i] + sRe * zRe[i] - sIm * zIm[i];
-    sum.im[i] = scale * zIm[n + i] + sRe * zIm[i] + sIm * zRe[i];
-  }
-  load.re.fill(0);
-  load.im.fill(0);
-  pencil.mass.addInto(load, 1, 0, sum);
-  pencil.velocity.addInto(load, 1, 0, { re: zRe.subarray(0, n), im: zIm.subarray(0, n) });
-  factor.solveInPlace(asColumn(load));
-  for (let i = 0; i < n; i++) {
-    const xRe = -load.re[i];
-    const xIm = -load.im[i];
-    out.re[i] = xRe;
-    out.im[i] = xIm;
-    out.re[n + i] = (zRe[i] + sRe * xRe - sIm * xIm) / scale;
-    out.im[n + i] = (zIm[i] + sRe * xIm + sIm * xRe) / scale;
-  }
-}
-
 /** Eigenvector of the Hessenberg matrix by two steps of inverse iteration, lifted to the displacements. */
-function ritzVector(space: KrylovSpace, thetaRe: number, thetaIm: number): ComplexVector {
-  const { hessenberg, basis } = space;
+function ritzVector(
+  basis: ComplexMatrix,
+  hessenberg: ComplexMatrix,
+  thetaRe: number,
+  thetaIm: number,
+): ComplexVector {
   const k = hessenberg.rows;
   const shifted = { rows: k, cols: k, re: hessenberg.re.slice(), im: hessenberg.im.slice() };
   for (let i = 0; i < k; i++) {
@@ -198,13 +133,4 @@ function ritzVector(space: KrylovSpace, thetaRe: number, thetaIm: number): Compl
   );
   normaliseInPlace(right);
   return right;
-}
-
-function leadingBlock(h: ComplexMatrix, k: number): ComplexMatrix {
-  const out = complexZeros(k, k);
-  for (let j = 0; j < k; j++) {
-    out.re.set(h.re.subarray(j * h.rows, j * h.rows + k), j * k);
-    out.im.set(h.im.subarray(j * h.rows, j * h.rows + k), j * k);
-  }
-  return out;
 }

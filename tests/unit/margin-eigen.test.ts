@@ -6,7 +6,7 @@ import { decay, decayOf } from "../../src/margin/decay.js";
 import { refineEigenpair } from "../../src/margin/eigenpair.js";
 import { verdictOf } from "../../src/margin/full-stability.js";
 import { multiplier } from "../../src/margin/multiplier.js";
-import { nearbyEigenvalues } from "../../src/margin/nearby-eigenvalues.js";
+import { type DiscEffort, nearbyEigenvalues } from "../../src/margin/nearby-eigenvalues.js";
 import { powerBalance } from "../../src/margin/power-balance.js";
 import { radius } from "../../src/margin/radius.js";
 import { isUnstable } from "../../src/margin/stability.js";
@@ -71,19 +71,20 @@ describe("inverse iteration", () => {
 });
 
 describe("Arnoldi on the full model", () => {
+  // Frequencies 0.5, 0.7, … apart like those of a structure.
+  const structureLike = (seed: number) => ({
+    ...randomCase(seed, 40, 1, 1, 0.02),
+    mass: diagonal(new Array(40).fill(1)),
+    damping: definite(createRandom(seed), 40, 0.01),
+    stiffness: diagonal(Array.from({ length: 40 }, (_, i) => (0.5 + 0.2 * i) ** 2)),
+  });
+
   it.each([
     [1, 0.02, 1.5],
     [2, -0.5, 2.5],
     [3, 0, 0.2],
   ])("finds all eigenvalues in its disc, as another library does (seed %i)", (seed, sRe, sIm) => {
-    // Frequencies 0.5, 0.7, … apart like those of a structure.
-    const random = createRandom(seed);
-    const given = {
-      ...randomCase(seed, 40, 1, 1, 0.02),
-      mass: diagonal(new Array(40).fill(1)),
-      damping: definite(random, 40, 0.01),
-      stiffness: diagonal(Array.from({ length: 40 }, (_, i) => (0.5 + 0.2 * i) ** 2)),
-    };
+    const given = structureLike(seed);
     const { model, state } = modelOf(given);
     const pencil = new FullModel(model).pencilAt(state);
     const area = nearbyEigenvalues(pencil, pencil.factor(sRe, sIm), 2, 1);
@@ -97,6 +98,26 @@ describe("Arnoldi on the full model", () => {
       // Residual 1e-9 at most; conditions of random eigenvalues are tens.
       expect(nearest).toBeLessThan(1e-7);
     }
+  });
+
+  it("goes on until its disc reaches as far as asked for, or the steps are spent", () => {
+    const given = structureLike(5);
+    const { model, state } = modelOf(given);
+    const pencil = new FullModel(model).pencilAt(state);
+    const disc = (effort: DiscEffort) => nearbyEigenvalues(pencil, pencil.factor(0, 2.5), 2, 1, effort);
+    const far = disc({ steps: 16, reach: 1.2, mostSteps: 60 });
+    expect(far.radius).toBeGreaterThanOrEqual(1.2);
+    const all = companionEigenvalues(pencilOf(given)).filter(
+      ({ re, im }) => Math.hypot(re, im - 2.5) < far.radius,
+    );
+    expect(far.eigenvalues.length).toBeGreaterThanOrEqual(all.length);
+    for (const { re, im } of all) {
+      const nearest = Math.min(...far.eigenvalues.map((own) => Math.hypot(own.re - re, own.im - im)));
+      expect(nearest).toBeLessThan(1e-7);
+    }
+    const spent = disc({ steps: 16, reach: 1.2, mostSteps: 24 });
+    expect(spent.radius).toBeLessThan(far.radius);
+    expect(disc({ steps: 24, reach: 0, mostSteps: 24 })).toEqual(spent);
   });
 
   it("knows the whole spectrum of one dof, massless too", () => {
