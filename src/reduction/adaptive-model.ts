@@ -5,7 +5,7 @@ import type { ModelState } from "../model/parametric-model.js";
 import { column, type DenseMatrix, zeros } from "../numerics/dense/matrix.js";
 import type { SparseMatrix } from "../numerics/sparse/sparse-matrix.js";
 import { Basis } from "./basis.js";
-import { type DensePencil, ReducedModel } from "./reduced-model.js";
+import { type DensePencil, ReducedModel, type ReducedSnapshot } from "./reduced-model.js";
 
 /** Models up to this order are their own reduced model: the basis spans everything. */
 const carriedWhole = 60;
@@ -80,6 +80,11 @@ export class AdaptiveModel {
 
   reducedAt(state: ModelState): DensePencil {
     return this.#reduced.pencilAt(state);
+  }
+
+  /** The reduced model as it stands, for other threads. */
+  snapshot(): ReducedSnapshot {
+    return this.#reduced.snapshot();
   }
 
   /** Real modes of a further sample, truncated in the energy norm: what it adds beyond 1 % is kept. */

@@ -19,6 +19,16 @@ export interface DensePencil extends Pencil {
   readonly outputTransposedMatrix: DenseMatrix;
 }
 
+/** A reduced model as plain data, for other threads. */
+export interface ReducedSnapshot {
+  readonly order: number;
+  /** VᵀA_kV, one per term of the model. */
+  readonly terms: readonly DenseMatrix[];
+  /** VᵀB and VᵀCᵀ, one per perturbation block. */
+  readonly left: readonly DenseMatrix[];
+  readonly right: readonly DenseMatrix[];
+}
+
 /**
  * The parametric model projected once, VᵀA_kV for every constant matrix, and assembled for
  * a new design and operating point in O(terms · r²). One-sided projection keeps every
@@ -29,8 +39,8 @@ export interface DensePencil extends Pencil {
 export class ReducedModel {
   readonly #model: ParametricModel;
   readonly #projected = new Map<SparseMatrix, DenseMatrix>();
-  #left: DenseMatrix[] = [];
-  #right: DenseMatrix[] = [];
+  #left: readonly DenseMatrix[] = [];
+  #right: readonly DenseMatrix[] = [];
   #order = 0;
 
   constructor(model: ParametricModel) {
@@ -52,6 +62,23 @@ export class ReducedModel {
     this.#left = this.#model.blocks.map((block) => projectChannel(block.left, v));
     this.#right = this.#model.blocks.map((block) => projectChannel(block.rightTransposed, v));
     this.#order = v.cols;
+  }
+
+  snapshot(): ReducedSnapshot {
+    const terms = this.#model.terms.map(({ matrix }) => this.#projected.get(matrix)!);
+    return { order: this.#order, terms, left: this.#left, right: this.#right };
+  }
+
+  /** The reduced model that a snapshot was taken of, as far as pencils are concerned. */
+  static from(model: ParametricModel, { order, terms, left, right }: ReducedSnapshot): ReducedModel {
+    const reduced = new ReducedModel(model);
+    model.terms.forEach(({ matrix }, k) => {
+      reduced.#projected.set(matrix, terms[k]);
+    });
+    reduced.#left = left;
+    reduced.#right = right;
+    reduced.#order = order;
+    return reduced;
   }
 
   pencilAt(state: ModelState): DensePencil {

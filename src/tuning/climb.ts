@@ -1,7 +1,7 @@
 import { sizeOf } from "../margin/measure.js";
 import { type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
 import { Follower } from "./follower.js";
-import type { Followed, Session } from "./session.js";
+import type { Followed, SearchModel } from "./search-model.js";
 
 /** A design as the reduced model sees it. */
 export interface Candidate {
@@ -41,55 +41,55 @@ const slotsPerPoint = 3;
  * until it brings nothing new.
  */
 export async function climb(
-  session: Session,
+  search: SearchModel,
   start: readonly number[],
   active: readonly ReadonlyMap<string, number>[],
   options: ClimbOptions,
 ): Promise<Climbed> {
-  let points = lowest(session, start, active, mostStartPoints);
+  let points = lowest(search, start, active, mostStartPoints);
   let x = [...start];
   for (let exchange = 0; ; exchange++) {
     // After the first solve the active set changes a little, and so does the design.
     const share = exchange === 0 ? 1 : 0.4;
-    x = await ascend(session, x, points, {
+    x = await ascend(search, x, points, {
       ...options,
       reach: share * options.reach,
       effort: share * options.effort,
     });
-    const design = session.designs.valuesOf(x);
-    const known = Math.min(...points.map((at) => session.estimate(design, at).value));
-    const worst = session.worstPoints(design, points, "coarse")[0];
-    const slack = options.tolerance * sizeOf(known, session.setting);
+    const design = search.designs.valuesOf(x);
+    const known = Math.min(...points.map((at) => search.estimate(design, at).value));
+    const worst = search.worstPoints(design, points, "coarse")[0];
+    const slack = options.tolerance * sizeOf(known, search.setting);
     if (worst.value >= known - slack || exchange === options.exchanges) {
       return { x, value: Math.min(known, worst.value), active: points };
     }
-    points = [...points.filter((at) => !near(session, at, worst.at)), worst.at];
+    points = [...points.filter((at) => !near(search, at, worst.at)), worst.at];
   }
 }
 
 function lowest(
-  session: Session,
+  search: SearchModel,
   x: readonly number[],
   points: readonly ReadonlyMap<string, number>[],
   most: number,
 ): ReadonlyMap<string, number>[] {
-  const design = session.designs.valuesOf(x);
+  const design = search.designs.valuesOf(x);
   return points
-    .map((at) => ({ at, value: session.estimate(design, at).value }))
+    .map((at) => ({ at, value: search.estimate(design, at).value }))
     .sort((a, b) => a.value - b.value)
     .slice(0, most)
     .map(({ at }) => at);
 }
 
 async function ascend(
-  session: Session,
+  search: SearchModel,
   start: readonly number[],
   points: readonly ReadonlyMap<string, number>[],
   options: ClimbOptions,
 ): Promise<number[]> {
-  const { designs } = session;
+  const { designs } = search;
   const first = designs.valuesOf(start);
-  const followers = points.map((at) => new Follower(session, at));
+  const followers = points.map((at) => new Follower(search, at));
   const slots = followers.map((follower) => slotFrequencies(follower.at(start, first).criticals));
   const free = start.map((_, i) => i).filter((i) => !options.frozen.has(i));
   if (free.length === 0) return [...start];
@@ -103,7 +103,7 @@ async function ascend(
   const problem: MaximinProblem = {
     dimension: free.length,
     pieces: slots.reduce((sum, list) => sum + list.length, 0),
-    limits: session.problem.budget.length,
+    limits: search.problem.budget.length,
     evaluate: (z) => {
       const x = spread(z);
       const design = designs.valuesOf(x);
@@ -119,7 +119,7 @@ async function ascend(
     reach: options.reach,
     maximumEvaluations: Math.ceil(options.effort * evaluationsOf(free.length, options.tolerance)),
     tolerance: options.tolerance,
-    unit: session.setting.unit,
+    unit: search.setting.unit,
   });
   return designs.pullBack(spread(result.x), start);
 }
@@ -153,7 +153,7 @@ function piecesOf(slots: readonly number[], criticals: Followed["criticals"], va
   return pieces.map((piece) => (Number.isFinite(piece) ? piece : largest));
 }
 
-function near(session: Session, a: ReadonlyMap<string, number>, b: ReadonlyMap<string, number>): boolean {
-  const [x, y] = [session.operation.unitOf(a), session.operation.unitOf(b)];
+function near(search: SearchModel, a: ReadonlyMap<string, number>, b: ReadonlyMap<string, number>): boolean {
+  const [x, y] = [search.operation.unitOf(a), search.operation.unitOf(b)];
   return x.every((xi, i) => Math.abs(xi - y[i]) < 0.05);
 }

@@ -1,5 +1,5 @@
 import { sizeOf } from "../margin/measure.js";
-import type { Followed, Session } from "./session.js";
+import type { Followed, SearchModel } from "./search-model.js";
 
 /** Peaks are followed up to this distance from the design searched last, share of each range. */
 const reach = 0.04;
@@ -21,14 +21,14 @@ const calm = 0.15;
  * ascent ends with is to be searched again.
  */
 export class Follower {
-  readonly #session: Session;
+  readonly #model: SearchModel;
   readonly #at: ReadonlyMap<string, number>;
   #searched:
     | { readonly x: readonly number[]; readonly value: number; readonly peaks: readonly number[] }
     | undefined;
 
-  constructor(session: Session, at: ReadonlyMap<string, number>) {
-    this.#session = session;
+  constructor(model: SearchModel, at: ReadonlyMap<string, number>) {
+    this.#model = model;
     this.#at = at;
   }
 
@@ -41,14 +41,14 @@ export class Follower {
     const last = this.#searched;
     if (last === undefined || last.peaks.length === 0) return null;
     if (x.some((xi, i) => Math.abs(xi - last.x[i]) > reach)) return null;
-    const followed = this.#session.follow(design, this.#at, last.peaks);
+    const followed = this.#model.follow(design, this.#at, last.peaks);
     if (followed === null) return null;
-    const size = sizeOf(last.value, this.#session.setting);
+    const size = sizeOf(last.value, this.#model.setting);
     return Math.abs(followed.value - last.value) <= calm * size ? followed : null;
   }
 
   #search(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
-    const estimate = this.#session.estimate(design, this.#at);
+    const estimate = this.#model.estimate(design, this.#at);
     const { value, criticals } = estimate;
     const count = Math.max(
       fewest,

@@ -1,5 +1,5 @@
 import { sizeOf } from "../margin/measure.js";
-import { type Climbed, type ClimbOptions, climb } from "./climb.js";
+import type { Climbed, ClimbOptions } from "./climb.js";
 import { type EnvelopeCheck, settledWorst } from "./judge.js";
 import type { ReportProgress, Session } from "./session.js";
 
@@ -46,11 +46,14 @@ export async function climbAll(
   options: ClimbOptions,
   progress: ReportProgress,
 ): Promise<Climbed[]> {
-  const found: Climbed[] = [];
-  for (const x of starts) {
-    progress({ stage: "climbing on the reduced model", done: found.length, total: starts.length });
-    found.push(await climb(session, x, active, options));
-  }
+  let done = 0;
+  const tell = () => progress({ stage: "climbing on the reduced model", done, total: starts.length });
+  tell();
+  const inputs = starts.map((start) => ({ start, active, options }));
+  const found = await session.crews.search.run("climb", inputs, () => {
+    done++;
+    tell();
+  });
   return found.sort((a, b) => b.value - a.value);
 }
 

@@ -62,7 +62,7 @@ export async function tune(
   }
   session.addExtremeSamples(designs.valuesOf(designs.start), true);
   const points = [before.at, ...session.operation.corners.map((x) => session.operation.valuesOf(x))];
-  const screened = screen(session, points, anchor, options.screened, options.starts, random, progress);
+  const screened = await screen(session, points, anchor, options.screened, options.starts, random, progress);
   // The best of them teaches what breaks a good design; the start design only knew what breaks a bad one.
   for (const at of points) settleAt(session, designs.valuesOf(screened[0].x), at, options.tolerance);
   const starts = await climbAll(
