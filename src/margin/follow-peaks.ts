@@ -7,13 +7,17 @@ import { type ChannelGain, channelGain } from "./channel-gain.js";
 import type { Peak } from "./polish-peak.js";
 
 /** Factorisations that one peak may take. */
-const mostSteps = 5;
+const mostSteps = 6;
 
 /**
- * Distance from a peak, in half widths, up to which the pole tells the height: the correction is its half square, of which
- * the pole has met nine tenths and more; 1e-6 was the most left on the ring brake.
+ * Distance from a peak, in half widths, from which the pole no longer tells the height: the correction is half the square of
+ * the distance, and a tenth of that may be the doing of other poles.
  */
-const closeEnough = 0.03;
+const farthest = 0.03;
+const leftOver = 0.05;
+
+/** Damping ratio of a pole from which on it blends with what is around: such peaks are left to a search. */
+const wellDamped = 0.05;
 
 /** Peaks closer than this, relative, have run into one another. */
 const merged = 1e-4;
@@ -27,14 +31,21 @@ const merged = 1e-4;
  * and Im λ is the next frequency. It stands still where σ does, whatever else takes part, since dσ/dω = −Im h′.
  *
  * @param known - frequencies of the peaks at the similar pencil [rad/s].
+ * @param accuracy - relative accuracy wanted in a height.
  * @returns the peaks in the order of `known`; null when one left the band, met another or did not settle, or when the pole
  * behind one lies on the axis or right of it. A peak that is not followed goes unseen, and with it an instability that none
  * of those followed shows: for searching only.
  */
-export function followPeaks(pencil: Pencil, known: readonly number[], band: Band): readonly Peak[] | null {
+export function followPeaks(
+  pencil: Pencil,
+  known: readonly number[],
+  band: Band,
+  accuracy: number,
+): readonly Peak[] | null {
+  const closeEnough = Math.min(farthest, Math.sqrt(accuracy / leftOver));
   const peaks: Peak[] = [];
   for (const omega of known) {
-    const peak = followPeak(pencil, omega, band);
+    const peak = followPeak(pencil, omega, band, closeEnough);
     if (peak === null || peaks.some((other) => Math.abs(other.omega - peak.omega) <= merged * peak.omega))
       return null;
     peaks.push(peak);
@@ -42,8 +53,9 @@ export function followPeaks(pencil: Pencil, known: readonly number[], band: Band
   return peaks;
 }
 
-function followPeak(pencil: Pencil, known: number, band: Band): Peak | null {
+function followPeak(pencil: Pencil, known: number, band: Band, closeEnough: number): Peak | null {
   let omega = known;
+  let last: { readonly omega: number; readonly shift: number } | undefined;
   for (let step = 0; step < mostSteps && omega > 0 && inBand(band, omega); step++) {
     const gain = channelGain(pencil, pencil.factor(0, omega));
     const { re, im } = slope(pencil, gain);
@@ -51,15 +63,26 @@ function followPeak(pencil: Pencil, known: number, band: Band): Peak | null {
     // λ − iω = σ/h′.
     const width = (-gain.sigma * re) / size;
     const shift = (-gain.sigma * im) / size;
-    // A pole further from the axis than from zero makes no peak of its own.
-    if (!(width > 0 && width < omega) || !gain.settled) return null;
+    if (!(width > 0 && width < wellDamped * omega) || !gain.settled) return null;
     const distance = shift / width;
     if (Math.abs(distance) <= closeEnough) {
       return { omega: omega + shift, sigma: gain.sigma * Math.hypot(1, distance) };
     }
-    omega += shift;
+    const next = omega + (last === undefined ? 1 : secant(omega, shift, last)) * shift;
+    last = { omega, shift };
+    omega = next;
   }
   return null;
+}
+
+/** How much further than the pole the peak is: other poles tilt the way there, which the last step tells. */
+function secant(
+  omega: number,
+  shift: number,
+  last: { readonly omega: number; readonly shift: number },
+): number {
+  const factor = (omega - last.omega) / (last.shift - shift);
+  return factor > 0.5 && factor < 2 ? factor : 1;
 }
 
 /** h′ = uᴴ H′(iω) v, a number; P′ = 2sM + C, and B′ is B in its damping-like columns, zero elsewhere. */

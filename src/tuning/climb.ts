@@ -1,5 +1,5 @@
 import { sizeOf } from "../margin/measure.js";
-import { type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
+import { feasibilityTolerance, type MaximinProblem, maximiseMinimum } from "../optimiser/epigraph.js";
 import { Follower } from "./follower.js";
 import type { Followed, SearchModel } from "./search-model.js";
 
@@ -100,6 +100,7 @@ async function ascend(
     });
     return x;
   };
+  let best = Number.NEGATIVE_INFINITY;
   const problem: MaximinProblem = {
     dimension: free.length,
     pieces: slots.reduce((sum, list) => sum + list.length, 0),
@@ -107,11 +108,16 @@ async function ascend(
     evaluate: (z) => {
       const x = spread(z);
       const design = designs.valuesOf(x);
-      const pieces = followers.flatMap((follower, k) => {
-        const { value, criticals } = follower.at(x, design);
-        return piecesOf(slots[k], criticals, value);
-      });
-      return { pieces, limits: designs.limitsAt(x) };
+      const limits = designs.limitsAt(x);
+      let found = followers.map((follower) => follower.at(x, design));
+      if (limits.every((g) => g <= feasibilityTolerance) && smallest(found) > best) {
+        found = followers.map((follower) => follower.search(x, design));
+        best = Math.max(best, smallest(found));
+      }
+      return {
+        pieces: found.flatMap(({ value, criticals }, k) => piecesOf(slots[k], criticals, value)),
+        limits,
+      };
     },
   };
   const result = await maximiseMinimum(problem, {
@@ -131,6 +137,10 @@ async function ascend(
 function evaluationsOf(dimension: number, tolerance: number): number {
   const decades = Math.max(0, Math.log10(1e-3 / tolerance));
   return (dimension + 1) * (18 + 6 * decades);
+}
+
+function smallest(found: readonly Followed[]): number {
+  return Math.min(...found.map(({ value }) => value));
 }
 
 function slotFrequencies(criticals: Followed["criticals"]): number[] {

@@ -17,14 +17,14 @@ const calm = 0.15;
 /**
  * The reduced model's word along an ascent at one operating point. Near a design that was searched its peaks
  * are followed; anything that points to a change of scene (`followPeaks`, a step too far, a value that moved much) has
- * the design searched instead. Peaks that were far below at the last search are not looked at, so what an
- * ascent ends with is to be searched again.
+ * the design searched instead. Of the peaks that were far below, the last search stands. So the value that is followed is
+ * an upper bound of the margin: enough to dismiss a design by, while one that promises something is to be searched.
  */
 export class Follower {
   readonly #model: SearchModel;
   readonly #at: ReadonlyMap<string, number>;
   #searched:
-    | { readonly x: readonly number[]; readonly value: number; readonly peaks: readonly number[] }
+    | { readonly x: readonly number[]; readonly found: Followed; readonly peaks: readonly number[] }
     | undefined;
 
   constructor(model: SearchModel, at: ReadonlyMap<string, number>) {
@@ -34,7 +34,7 @@ export class Follower {
 
   /** @param x - the design as a point of the unit space. */
   at(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
-    return this.#follow(x, design) ?? this.#search(x, design);
+    return this.#follow(x, design) ?? this.search(x, design);
   }
 
   #follow(x: readonly number[], design: ReadonlyMap<string, number>): Followed | null {
@@ -43,20 +43,23 @@ export class Follower {
     if (x.some((xi, i) => Math.abs(xi - last.x[i]) > reach)) return null;
     const followed = this.#model.follow(design, this.#at, last.peaks);
     if (followed === null) return null;
-    const size = sizeOf(last.value, this.#model.setting);
-    return Math.abs(followed.value - last.value) <= calm * size ? followed : null;
+    const { value, criticals } = last.found;
+    if (Math.abs(followed.value - value) > calm * sizeOf(value, this.#model.setting)) return null;
+    return { ...followed, criticals: [...followed.criticals, ...criticals.slice(last.peaks.length)] };
   }
 
-  #search(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
-    const estimate = this.#model.estimate(design, this.#at);
-    const { value, criticals } = estimate;
+  /** The same by a search, without another one where `at` has just made it. */
+  search(x: readonly number[], design: ReadonlyMap<string, number>): Followed {
+    if (this.#searched?.x === x) return this.#searched.found;
+    const found = this.#model.estimate(design, this.#at);
+    const { value, criticals } = found;
     const count = Math.max(
       fewest,
       criticals.filter((critical) => critical.value <= competing * value).length,
     );
     const stable = criticals.every((critical) => critical.kind === "peak");
     const peaks = stable && count <= most ? criticals.slice(0, count).map(({ omega }) => omega) : [];
-    this.#searched = { x, value, peaks };
-    return estimate;
+    this.#searched = { x, found, peaks };
+    return found;
   }
 }

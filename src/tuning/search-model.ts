@@ -62,7 +62,8 @@ export class SearchModel {
 
   /**
    * Values of known peaks at a design and operating point close to where they were found, far cheaper than an
-   * estimate; null when they cannot be followed there (`followPeaks`).
+   * estimate of a large model; null when they cannot be followed there (`followPeaks`), or the model is so small that an
+   * estimate costs no more.
    */
   follow(
     design: ReadonlyMap<string, number>,
@@ -70,7 +71,8 @@ export class SearchModel {
     known: readonly number[],
   ): Followed | null {
     const pencil = this.#searchPencil(statesAt(this.model, this.valuesAt(design, at))(1));
-    const peaks = followPeaks(pencil, known, this.setting.band);
+    if (pencil.order < worthFollowing) return null;
+    const peaks = followPeaks(pencil, known, this.setting.band, followed * this.problem.tune.tolerance);
     if (peaks === null) return null;
     this.reducedEvaluations++;
     const criticals = peaks
@@ -102,6 +104,12 @@ export function allValues(
 ): Values {
   return new Map([...problem.constants, ...design, ...at]);
 }
+
+/** Order of a pencil from which on following is much cheaper than a search, whose cost grows like its cube times eight. */
+const worthFollowing = 40;
+
+/** Accuracy of followed peaks, as a share of the tolerance of tuning. */
+const followed = 0.02;
 
 /** While searching, a peak's frequency is wanted to a thousandth of the narrowest peak only. */
 const searchPeaks: PeakOptions = { ...peakDefaults, screen: 0.25, accuracy: 1e-6 };
