@@ -131,6 +131,34 @@ it.each([1, 2, 3, 5])("triple and fivefold eigenvalues are found whole with bloc
   });
 });
 
+it.each([1, 3, 4])(
+  "two square membranes side by side show all modes, pairs fourfold, by blocks of %i",
+  (blockSize) => {
+    // Fixed edges, 14×14 inner points each: λ = 4 − 2 cos(pπ/15) − 2 cos(qπ/15), twice for p = q, four times else.
+    const side = 14;
+    const n = 2 * side * side;
+    const neighbours = (i: number, j: number) => {
+      const [low, high] = i < j ? [i, j] : [j, i];
+      return high - low === side
+        ? low % (side * side) < side * (side - 1)
+        : high - low === 1 && high % side > 0;
+    };
+    const k = matrixOf(n, (i, j) => (i === j ? 4 : neighbours(i, j) ? -1 : 0));
+    const cosine = (p: number) => 2 * Math.cos(((p + 1) * Math.PI) / (side + 1));
+    const all = range(n, (t) => 4 - cosine(t % side) - cosine(Math.floor(t / side) % side)).sort(
+      (a, b) => a - b,
+    );
+    const upper = 1.5;
+    expectModes({
+      k,
+      m: diagonal(range(n, () => 1)),
+      shift: -0.05,
+      wanted: all.filter((value) => value < upper),
+      options: { lower: -0.05, upper, blockSize },
+    });
+  },
+);
+
 it("copies beyond the block size are found by deflation, before rounding errors would bring them in", () => {
   // The Krylov space of one vector does not end here, yet in exact arithmetic holds one copy only.
   const n = 3000;

@@ -53,6 +53,8 @@ export class KrylovBasis {
   private readonly t: Float64Array;
   private readonly tStride: number;
   private coupling: DenseMatrix = zeros(0, 0);
+  /** First column of V that `coupling` ties to W: the three-term recurrence begins there. */
+  private coupledFrom = 0;
 
   /** @param capacity - Largest size; `expand` may be called while size + ahead stays within it. */
   constructor(problem: ShiftInvertProblem, block: number, capacity: number, random: Random) {
@@ -74,11 +76,14 @@ export class KrylovBasis {
     const w = this.columns(end, width);
     w.values.set(this.massV.subarray(this.size * n, end * n));
     this.solve(w);
-    const projection = this.projectOut(end, w);
+    // What the recurrence knows of is taken out first, so that the pass over all of V only has rounding to remove.
+    const from = this.coupledFrom;
+    const projection = this.projectOut(end, w, from);
     const correction = this.projectOut(end, w);
     for (let j = 0; j < width; j++) {
       for (let i = 0; i < end; i++) {
-        const entry = projection.values[i + j * end] + correction.values[i + j * end];
+        const known = i < from ? 0 : projection.values[i - from + j * (end - from)];
+        const entry = known + correction.values[i + j * end];
         this.t[i + (this.size + j) * this.tStride] = entry;
         this.t[this.size + j + i * this.tStride] = entry;
       }
@@ -99,6 +104,7 @@ export class KrylovBasis {
         this.coupling.values[i + (end - width + j) * this.ahead] = r.values[i + j * width];
       }
     }
+    this.coupledFrom = end - width;
   }
 
   /** Rayleigh–Ritz: O(size³). */
@@ -168,6 +174,7 @@ export class KrylovBasis {
     this.setDiagonal(pairs, chosen);
     for (let j = 0; j < this.ahead; j++) this.copyColumn(k + j, this.size + j);
     this.coupling = coupling;
+    this.coupledFrom = 0;
   }
 
   /** Keeps only the chosen, converged pairs and goes on with fresh random vectors. */
@@ -177,6 +184,7 @@ export class KrylovBasis {
     this.ahead = 0;
     this.fillAhead();
     this.coupling = zeros(this.ahead, this.size);
+    this.coupledFrom = 0;
   }
 
   private purifiedCoefficients(pairs: RitzPairs, chosen: readonly number[]): DenseMatrix {
