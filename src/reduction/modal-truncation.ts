@@ -42,10 +42,9 @@ export function truncateModes(pencil: DensePencil, omega: number): DensePencil {
     stiffness.values[i * (order + 1)] = 1 - sigma * values[first + i];
   }
   const { displacementMatrix } = pencil;
-  const circulatory = {
-    ...stiffnessMatrix,
-    values: displacementMatrix.values.map((value, q) => value - stiffnessMatrix.values[q]),
-  };
+  const circulatory = zeros(pencil.order, pencil.order);
+  for (let q = 0; q < circulatory.values.length; q++)
+    circulatory.values[q] = displacementMatrix.values[q] - stiffnessMatrix.values[q];
   const project = (a: DenseMatrix) => multiplyTransposed(modes, multiply(a, modes));
   const displacement = project(circulatory);
   for (let i = 0; i < order; i++) displacement.values[i * (order + 1)] += stiffness.values[i * (order + 1)];

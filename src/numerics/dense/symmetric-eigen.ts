@@ -61,7 +61,8 @@ function tridiagonalise(a: DenseMatrix): Tridiagonal {
   invariant(a.rows === a.cols, `eigenvalues of a ${a.rows}×${a.cols} matrix`);
   const n = a.rows;
   const scale = powerOfTwoAbove(requireFiniteMaximum(a.values, "A symmetric matrix"));
-  const work = a.values.map((x) => x / scale);
+  const work = a.values.slice();
+  for (let i = 0; i < work.length; i++) work[i] /= scale;
   const d = new Float64Array(n);
   const e = new Float64Array(n);
   const tau = new Float64Array(n);
