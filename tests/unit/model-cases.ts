@@ -205,6 +205,12 @@ const asMatrix = (a: DenseMatrix) => {
   return out;
 };
 
+/** The matrix itself, once it is known to be finite: on NaN or overflow ml-matrix never returns. */
+function finite(a: Matrix): Matrix {
+  if (a.to1DArray().every(Number.isFinite)) return a;
+  throw new Error("a matrix for ml-matrix holds entries that are not finite");
+}
+
 /** σ_max(H(iω)) by the real form of the complex system, with another library's matrices throughout. */
 export function slowGain(pencil: DensePencil, omega: number): number {
   const [m, c, s, b, ct] = [
@@ -235,10 +241,10 @@ export function slowGain(pencil: DensePencil, omega: number): number {
   load.setSubMatrix(bIm, n, 0).setSubMatrix(bRe, n, b.columns);
   const out = Matrix.zeros(2 * ct.columns, 2 * n);
   out.setSubMatrix(ct.transpose(), 0, 0).setSubMatrix(ct.transpose(), ct.columns, n);
-  const h = out.mmul(realInverse(real)).mmul(load);
+  const h = out.mmul(realInverse(finite(real))).mmul(load);
   // The singular values of the real form are those of H, each twice.
   const gram = h.transpose().mmul(h);
-  const values = new EigenvalueDecomposition(gram, { assumeSymmetric: true }).realEigenvalues;
+  const values = new EigenvalueDecomposition(finite(gram), { assumeSymmetric: true }).realEigenvalues;
   return Math.sqrt(Math.max(0, ...values));
 }
 
@@ -269,10 +275,10 @@ export function companionEigenvalues(pencil: DensePencil): { re: number; im: num
     Matrix,
   ];
   const n = pencil.order;
-  const inverse = realInverse(m);
+  const inverse = realInverse(finite(m));
   const a = Matrix.zeros(2 * n, 2 * n);
   a.setSubMatrix(Matrix.eye(n), 0, n);
   a.setSubMatrix(inverse.mmul(s).mul(-1), n, 0).setSubMatrix(inverse.mmul(c).mul(-1), n, n);
-  const { realEigenvalues, imaginaryEigenvalues } = new EigenvalueDecomposition(a);
+  const { realEigenvalues, imaginaryEigenvalues } = new EigenvalueDecomposition(finite(a));
   return realEigenvalues.map((re, k) => ({ re, im: imaginaryEigenvalues[k]! }));
 }
