@@ -1,6 +1,11 @@
-import type { DenseMatrix } from "../numerics/dense/matrix.js";
+import { addProductInto, addTransposedProductInto } from "../numerics/dense/block-kernels.js";
+import { column, type DenseMatrix, zeros } from "../numerics/dense/matrix.js";
+import { wholeBlock } from "../numerics/dense/products.js";
+import { multiplyColumns } from "../numerics/sparse/real-sparse-products.js";
 import type { SparseMatrix } from "../numerics/sparse/sparse-matrix.js";
-import { multiplyAddInto } from "../numerics/sparse/sparse-matrix.js";
+
+/** Vectors projected together. */
+const together = 8;
 
 /**
  * A growing real basis V with VᵀEV = I, E symmetric positive definite. E is an energy
@@ -34,45 +39,68 @@ export class Basis {
    */
   append(vectors: Iterable<Float64Array>, dropBelow: number): number {
     const before = this.#count;
+    let waiting: Float64Array[] = [];
     for (const vector of vectors) {
       if (this.#count === this.rows) break;
-      this.#appendOne(vector, dropBelow);
+      waiting.push(vector);
+      if (waiting.length === together) {
+        this.#appendBlock(waiting, dropBelow);
+        waiting = [];
+      }
     }
+    this.#appendBlock(waiting, dropBelow);
     return this.#count - before;
   }
 
-  #appendOne(vector: Float64Array, dropBelow: number): void {
-    const w = vector.slice();
-    const original = this.#energyNorm(w);
-    if (!(original > 0) || !Number.isFinite(original)) return;
+  #appendBlock(vectors: readonly Float64Array[], dropBelow: number): void {
+    const known = this.#count;
+    const w = zeros(this.rows, vectors.length);
+    vectors.forEach((vector, j) => {
+      column(w, j).set(vector);
+    });
+    const energyW = multiplyColumns(this.#energy, w);
+    const original = vectors.map((_, j) => energyNorm(column(w, j), column(energyW, j)));
     // Two passes are enough for orthogonality to rounding (Giraud, Langou, Rozložník 2005).
-    this.#removeComponents(w);
-    this.#removeComponents(w);
-    const left = this.#energyNorm(w);
-    if (left <= dropBelow * original) return;
-    for (let i = 0; i < w.length; i++) w[i] /= left;
-    this.#store(w);
-  }
-
-  #removeComponents(w: Float64Array): void {
-    const n = this.rows;
-    const ew = new Float64Array(n);
-    multiplyAddInto(ew, 1, this.#energy, w);
-    const v = this.#columns;
-    for (let j = 0; j < this.#count; j++) {
-      const from = j * n;
-      let sum = 0;
-      for (let i = 0; i < n; i++) sum += v[from + i] * ew[i];
-      for (let i = 0; i < n; i++) w[i] -= sum * v[from + i];
+    this.#removeComponents(w, energyW, 0, known);
+    this.#removeComponents(w, multiplyColumns(this.#energy, w), 0, known);
+    const rest = multiplyColumns(this.#energy, w);
+    for (let j = 0; j < w.cols; j++) {
+      if (!(original[j] > 0) || !Number.isFinite(original[j])) continue;
+      this.#acceptColumn(column(w, j), column(rest, j), known, dropBelow * original[j]);
     }
   }
 
-  #energyNorm(w: Float64Array): number {
-    const ew = new Float64Array(this.rows);
-    multiplyAddInto(ew, 1, this.#energy, w);
-    let sum = 0;
-    for (let i = 0; i < ew.length; i++) sum += w[i] * ew[i];
-    return Math.sqrt(Math.max(0, sum));
+  /** Appends w, orthogonal to the first `known` columns, made so to the later ones too, if it stays above `floor`. */
+  #acceptColumn(w: Float64Array, energyW: Float64Array, known: number, floor: number): void {
+    if (this.#count === this.rows) return;
+    const x = { rows: this.rows, cols: 1, values: w };
+    let energyX = { rows: this.rows, cols: 1, values: energyW };
+    for (let first = known; ; first = 0) {
+      const before = energyNorm(w, energyX.values);
+      const removed = norm2(this.#removeComponents(x, energyX, first, this.#count));
+      const left = Math.sqrt(Math.max(0, before * before - removed * removed));
+      if (before <= floor) return;
+      // Where much went, rounding errors along all columns have grown with what is left: once more then.
+      if (left <= 0.5 * before) {
+        energyX = multiplyColumns(this.#energy, x);
+        continue;
+      }
+      if (left > floor) {
+        for (let i = 0; i < w.length; i++) w[i] /= left;
+        this.#store(w);
+      }
+      return;
+    }
+  }
+
+  /** W ← W − V VᵀEW over columns `first` … `end` − 1 of V; returns the coefficients. */
+  #removeComponents(w: DenseMatrix, energyW: DenseMatrix, first: number, end: number): Float64Array {
+    const n = this.rows;
+    const c = zeros(end - first, w.cols);
+    const v = { values: this.#columns, at: first * n, stride: n };
+    addTransposedProductInto(wholeBlock(c), 1, v, wholeBlock(energyW), c.rows, w.cols, n);
+    addProductInto(wholeBlock(w), -1, v, wholeBlock(c), n, w.cols, c.rows);
+    return c.values;
   }
 
   #store(w: Float64Array): void {
@@ -85,4 +113,17 @@ export class Basis {
     this.#columns.set(w, this.#count * n);
     this.#count++;
   }
+}
+
+/** √(wᵀEw). */
+function energyNorm(w: Float64Array, energyW: Float64Array): number {
+  let sum = 0;
+  for (let i = 0; i < w.length; i++) sum += w[i] * energyW[i];
+  return Math.sqrt(Math.max(0, sum));
+}
+
+function norm2(x: Float64Array): number {
+  let sum = 0;
+  for (const value of x) sum += value * value;
+  return Math.sqrt(sum);
 }

@@ -46,6 +46,24 @@ describe("a basis", () => {
     expect(largestDifference(gram, denseOf(diagonal(new Array(10).fill(1))))).toBeLessThan(1e-13);
   });
 
+  it("keeps vectors of one batch apart, however nearly they depend on each other or on what was there", () => {
+    const random = createRandom(7);
+    const n = 60;
+    const energyRows = definite(random, n, 1);
+    const basis = new Basis(sparseOf(energyRows));
+    const batch = randomRows(random, 12, n).map((row) => Float64Array.from(row));
+    expect(basis.append(batch, 1e-10)).toBe(12);
+    // Half known, half new; each differs from the others by 1e-6 of itself, and every third is there twice.
+    const fresh = randomRows(random, 1, n)[0]!;
+    const common = batch[3]!.map((value, i) => value + fresh[i]!);
+    const close = randomRows(random, 20, n).map((row) => common.map((value, i) => value + 1e-6 * row[i]!));
+    const twice = close.filter((_, k) => k % 3 === 0);
+    expect(basis.append([...close, ...twice], 1e-10)).toBe(20);
+    const v = basis.matrix;
+    const gram = multiplyTransposed(v, multiply(denseOf(energyRows), v));
+    expect(largestDifference(gram, denseOf(diagonal(new Array(32).fill(1))))).toBeLessThan(1e-13);
+  });
+
   it("drops what is not new, zero, or not finite", () => {
     const basis = new Basis(sparseOf(diagonal([1, 4, 9])));
     const unit = Float64Array.of(1, 0, 0);

@@ -1,7 +1,10 @@
-/** Products of a sparse real A with complex vectors: both parts share the reading of the matrix. */
+/**
+ * Products of a sparse real A with complex vectors, whose two parts share the reading of the matrix, and with
+ * several real ones.
+ */
 
-import type { ComplexVector } from "../dense/matrix.js";
-import type { SparseMatrix } from "./sparse-matrix.js";
+import { type ComplexVector, column, type DenseMatrix, zeros } from "../dense/matrix.js";
+import { multiplyAddInto, type SparseMatrix } from "./sparse-matrix.js";
 
 /** y ← y + c A x with c = cRe + i cIm; y and x must not alias. */
 export function addRealProductInto(
@@ -51,5 +54,43 @@ export function addRealTransposedProductInto(
     }
     yRe[j] += cRe * re - cIm * im;
     yIm[j] += cRe * im + cIm * re;
+  }
+}
+
+/** Y = A X for real X of any width, a new matrix; four columns share a pass. */
+export function multiplyColumns(a: SparseMatrix, x: DenseMatrix): DenseMatrix {
+  const y = zeros(a.rows, x.cols);
+  let j = 0;
+  for (; j + 3 < x.cols; j += 4) addFourColumns(y, a, x, j);
+  for (; j < x.cols; j++) multiplyAddInto(column(y, j), 1, a, column(x, j));
+  return y;
+}
+
+function addFourColumns(y: DenseMatrix, a: SparseMatrix, x: DenseMatrix, first: number): void {
+  const { rows, cols, colStart, rowIndex, values } = a;
+  const from = x.values;
+  const to = y.values;
+  const x0 = first * cols;
+  const x1 = x0 + cols;
+  const x2 = x1 + cols;
+  const x3 = x2 + cols;
+  const y0 = first * rows;
+  const y1 = y0 + rows;
+  const y2 = y1 + rows;
+  const y3 = y2 + rows;
+  for (let j = 0; j < cols; j++) {
+    const a0 = from[x0 + j];
+    const a1 = from[x1 + j];
+    const a2 = from[x2 + j];
+    const a3 = from[x3 + j];
+    const end = colStart[j + 1];
+    for (let p = colStart[j]; p < end; p++) {
+      const i = rowIndex[p];
+      const value = values[p];
+      to[y0 + i] += value * a0;
+      to[y1 + i] += value * a1;
+      to[y2 + i] += value * a2;
+      to[y3 + i] += value * a3;
+    }
   }
 }
