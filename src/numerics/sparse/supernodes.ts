@@ -35,9 +35,13 @@ function trapezoid(p: number, f: number): number {
   return p * f - (p * (p - 1)) / 2;
 }
 
-/** Share of stored zeros that a supernode with p columns may carry. */
+/**
+ * Share of stored zeros that a supernode with p columns may carry. The time of the complex LU is flat
+ * around these values, on plates and slabs of 10 000 to 30 000 dofs: 0.5 for few columns costs 10 %
+ * more on some, and much smaller shares save storage but leave many fronts of one node.
+ */
 function allowedZeros(p: number): number {
-  if (p <= 16) return 0.5;
+  if (p <= 16) return 0.35;
   if (p <= 48) return 0.15;
   return 0.05;
 }
