@@ -11,8 +11,8 @@ import { subtractLargeComplexProduct } from "./host";
 import { larger, largestLane, multiply, multiplyAdd, multiplySubtract, splat, widthOf, zero } from "./lanes";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
-const PANEL: i32 = 48;
-const BLOCK: i32 = 8;
+const PANEL: i32 = 60;
+const BLOCK: i32 = 12;
 /** A pivot must reach this share of its column (squared). */
 const THRESHOLD: f64 = 0.01 * 0.01;
 /** The diagonal is taken, without looking further, from this share on (squared). */

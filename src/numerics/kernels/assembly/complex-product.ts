@@ -1,17 +1,45 @@
 /**
- * C ← C − op(A) B for complex column-major blocks in split storage, by packed panels and a
- * register block of 2·width × 2. Addresses are bytes, strides and sizes are counted in doubles.
+ * C ← C − op(A) B for complex column-major blocks in split storage, by three real products
+ * instead of four. Addresses are bytes, strides and sizes are counted in doubles.
  *
- * Source: Goto & van de Geijn, ACM TOMS 34(3), 2008.
+ * With T₁ = A_r B_r, T₂ = t² A_i B_i and T₃ = (A_r + t A_i)(B_r + t B_i) the product is
+ *
+ *     T₁ − T₂/t² + i (T₃ − T₁ − T₂)/t.
+ *
+ * For t = 1 the imaginary part carries rounding errors of the size of the real one: of light
+ * damping little would be left. A power of two t that makes both parts about as large gives
+ * each an error of its own size.
+ *
+ * Source: Higham, SIAM J. Matrix Anal. Appl. 13(3), 1992 (three products); the scaling is ours.
  */
 
-import { copyPadded, multiplyAdd, multiplySubtract, splatAt, subtractLanes, widthOf, zero } from "./lanes";
-import { PACKED_LEFT, PACKED_RIGHT } from "./layout";
-
-/** Depth, columns and rows packed at a time: 64 rows fill the first-level cache, the columns the second. */
-const DEPTH: i32 = 64;
-const COLUMNS: i32 = 512;
-const ROWS: i32 = 64;
+import {
+  larger,
+  largestLane,
+  magnitude,
+  multiply,
+  multiplyAdd,
+  splat,
+  subtract,
+  widthOf,
+  zero,
+} from "./lanes";
+import {
+  COLUMNS,
+  DEPTH,
+  LEFT,
+  LEFT_SECOND,
+  LEFT_THIRD,
+  RIGHT,
+  RIGHT_SECOND,
+  RIGHT_THIRD,
+  ROWS,
+  TILE,
+  TILE_COLUMNS,
+  TILE_SECOND,
+  TILE_THIRD,
+} from "./layout";
+import { multiplyTile, packLeft, packLeftTransposed, packRight, subtractTile } from "./tiles";
 
 /** op(A) = A (m×k at `a`), or Aᴴ when `adjoint` (then A is k×m); B is k×n, C m×n and overlaps neither. */
 export function subtractComplexProduct<V>(
@@ -34,138 +62,98 @@ export function subtractComplexProduct<V>(
     for (let p0 = 0; p0 < k; p0 += DEPTH) {
       const depth = min(DEPTH, k - p0);
       const right = (<usize>(p0 + j0 * bStride)) << 3;
-      packRight(bRe + right, bIm + right, bStride, columns, depth);
+      packRight(RIGHT, bRe + right, bStride, columns, depth);
+      packRight(RIGHT_SECOND, bIm + right, bStride, columns, depth);
+      const t = balance<V>(RIGHT, RIGHT_SECOND, roundUp(columns, TILE_COLUMNS) * depth);
+      addScaled<V>(RIGHT_THIRD, RIGHT, RIGHT_SECOND, t, roundUp(columns, TILE_COLUMNS) * depth);
       for (let i0 = 0; i0 < m; i0 += ROWS) {
         const rows = min(ROWS, m - i0);
+        const left = (<usize>(adjoint ? p0 + i0 * aStride : i0 + p0 * aStride)) << 3;
         if (adjoint) {
-          const left = (<usize>(p0 + i0 * aStride)) << 3;
-          packLeftAdjoint<V>(aRe + left, aIm + left, aStride, rows, depth);
+          packLeftTransposed<V>(LEFT, aRe + left, aStride, rows, depth);
+          packLeftTransposed<V>(LEFT_SECOND, aIm + left, aStride, rows, depth);
         } else {
-          const left = (<usize>(i0 + p0 * aStride)) << 3;
-          packLeft<V>(aRe + left, aIm + left, aStride, rows, depth);
+          packLeft<V>(LEFT, aRe + left, aStride, rows, depth);
+          packLeft<V>(LEFT_SECOND, aIm + left, aStride, rows, depth);
         }
+        const sign: f64 = adjoint ? -1 : 1;
+        addScaled<V>(LEFT_THIRD, LEFT, LEFT_SECOND, sign * t, roundUp(rows, 2 * widthOf<V>()) * depth);
         const target = (<usize>(i0 + j0 * cStride)) << 3;
-        subtractPacked<V>(cRe + target, cIm + target, cStride, rows, columns, depth);
+        subtractPacked<V>(cRe + target, cIm + target, cStride, rows, columns, depth, t, sign);
       }
     }
   }
 }
 
-/** Pairs of columns, row by row: re, im of the one, re, im of the other; an odd last column gets zeros. */
-function packRight(re: usize, im: usize, stride: i32, columns: i32, depth: i32): void {
-  let to = PACKED_RIGHT;
-  const step = (<usize>stride) << 3;
-  for (let j = 0; j < columns; j += 2) {
-    const paired = j + 1 < columns;
-    for (let p: usize = 0; p < (<usize>depth) << 3; p += 8, to += 32) {
-      store<f64>(to, load<f64>(re + p));
-      store<f64>(to, load<f64>(im + p), 8);
-      store<f64>(to, paired ? load<f64>(re + step + p) : 0, 16);
-      store<f64>(to, paired ? load<f64>(im + step + p) : 0, 24);
-    }
-    re += step << 1;
-    im += step << 1;
+function roundUp(size: i32, unit: i32): i32 {
+  return ((size + unit - 1) / unit) * unit;
+}
+
+/** The power of two that makes the largest imaginary part about as large as the largest real one. */
+function balance<V>(re: usize, im: usize, count: i32): f64 {
+  let x = zero<V>();
+  let y = zero<V>();
+  const end = re + ((<usize>count) << 3);
+  for (; re < end; re += sizeof<V>(), im += sizeof<V>()) {
+    x = larger<V>(x, magnitude<V>(load<V>(re)));
+    y = larger<V>(y, magnitude<V>(load<V>(im)));
+  }
+  const real = largestLane<V>(x);
+  const imaginary = largestLane<V>(y);
+  if (!(real > 0) || !(imaginary > 0)) return 1;
+  // The exponents of two doubles differ by those of their quotient, give or take one.
+  const shift = <i32>(reinterpret<i64>(real) >> 52) - <i32>(reinterpret<i64>(imaginary) >> 52);
+  return reinterpret<f64>((<i64>(1023 + max(-40, min(40, shift)))) << 52);
+}
+
+/** to ← x + t y. */
+function addScaled<V>(to: usize, x: usize, y: usize, t: f64, count: i32): void {
+  const v = splat<V>(t);
+  const end = x + ((<usize>count) << 3);
+  for (; x < end; x += sizeof<V>(), y += sizeof<V>(), to += sizeof<V>()) {
+    store<V>(to, multiplyAdd<V>(load<V>(y), v, load<V>(x)));
   }
 }
 
-/** Strips of 2·width rows, column by column: their real parts, then their imaginary parts; missing rows are zero. */
-function packLeft<V>(re: usize, im: usize, stride: i32, rows: i32, depth: i32): void {
+function subtractPacked<V>(
+  cRe: usize,
+  cIm: usize,
+  cStride: i32,
+  rows: i32,
+  columns: i32,
+  depth: i32,
+  t: f64,
+  sign: f64,
+): void {
   const strip = 2 * widthOf<V>();
-  const half: usize = sizeof<V>();
-  const step = (<usize>stride) << 3;
-  let to = PACKED_LEFT;
-  for (let i = 0; i < rows; i += strip) {
-    const left = rows - i;
-    let r = re + ((<usize>i) << 3);
-    let s = im + ((<usize>i) << 3);
-    for (let p = 0; p < depth; p++) {
-      if (left >= strip) {
-        store<V>(to, load<V>(r));
-        store<V>(to + half, load<V>(r + half));
-        store<V>(to + 2 * half, load<V>(s));
-        store<V>(to + 3 * half, load<V>(s + half));
-      } else {
-        copyPadded(to, r, left, strip);
-        copyPadded(to + 2 * half, s, left, strip);
-      }
-      to += 4 * half;
-      r += step;
-      s += step;
-    }
-  }
-}
-
-/** The same for Aᴴ, whose rows are the conjugated columns of A. */
-function packLeftAdjoint<V>(re: usize, im: usize, stride: i32, rows: i32, depth: i32): void {
-  const strip = 2 * widthOf<V>();
-  const half: usize = sizeof<V>();
-  for (let i = 0; i < rows; i += strip) {
-    for (let t = 0; t < strip; t++) {
-      let to = PACKED_LEFT + ((<usize>(2 * i * depth + t)) << 3);
-      const column = (<usize>((i + t) * stride)) << 3;
-      const inside = i + t < rows;
-      for (let p: usize = 0; p < (<usize>depth) << 3; p += 8, to += 4 * half) {
-        store<f64>(to, inside ? load<f64>(re + column + p) : 0);
-        store<f64>(to + 2 * half, inside ? -load<f64>(im + column + p) : 0);
-      }
-    }
-  }
-}
-
-function subtractPacked<V>(cRe: usize, cIm: usize, cStride: i32, rows: i32, columns: i32, depth: i32): void {
-  const strip = 2 * widthOf<V>();
-  const half: usize = sizeof<V>();
-  const step = (<usize>cStride) << 3;
-  for (let j = 0; j < columns; j += 2) {
-    const paired = j + 1 < columns;
-    const bBegin = PACKED_RIGHT + ((<usize>(j * depth)) << 4);
-    const bEnd = bBegin + ((<usize>depth) << 5);
-    let a = PACKED_LEFT;
+  for (let j = 0; j < columns; j += TILE_COLUMNS) {
+    const b = (<usize>(j * depth)) << 3;
     for (let i = 0; i < rows; i += strip) {
-      let r00 = zero<V>();
-      let r10 = zero<V>();
-      let i00 = zero<V>();
-      let i10 = zero<V>();
-      let r01 = zero<V>();
-      let r11 = zero<V>();
-      let i01 = zero<V>();
-      let i11 = zero<V>();
-      for (let b = bBegin; b < bEnd; b += 32, a += 4 * half) {
-        const ar0 = load<V>(a);
-        const ar1 = load<V>(a + half);
-        const ai0 = load<V>(a + 2 * half);
-        const ai1 = load<V>(a + 3 * half);
-        const br = splatAt<V>(b);
-        r00 = multiplyAdd<V>(ar0, br, r00);
-        r10 = multiplyAdd<V>(ar1, br, r10);
-        i00 = multiplyAdd<V>(ai0, br, i00);
-        i10 = multiplyAdd<V>(ai1, br, i10);
-        const bi = splatAt<V>(b + 8);
-        r00 = multiplySubtract<V>(ai0, bi, r00);
-        r10 = multiplySubtract<V>(ai1, bi, r10);
-        i00 = multiplyAdd<V>(ar0, bi, i00);
-        i10 = multiplyAdd<V>(ar1, bi, i10);
-        const dr = splatAt<V>(b + 16);
-        r01 = multiplyAdd<V>(ar0, dr, r01);
-        r11 = multiplyAdd<V>(ar1, dr, r11);
-        i01 = multiplyAdd<V>(ai0, dr, i01);
-        i11 = multiplyAdd<V>(ai1, dr, i11);
-        const di = splatAt<V>(b + 24);
-        r01 = multiplySubtract<V>(ai0, di, r01);
-        r11 = multiplySubtract<V>(ai1, di, r11);
-        i01 = multiplyAdd<V>(ar0, di, i01);
-        i11 = multiplyAdd<V>(ar1, di, i11);
-      }
-      const at = (<usize>i) << 3;
-      const left = rows - i;
-      subtractLanes<V>(cRe + at, r00, r10, left);
-      subtractLanes<V>(cIm + at, i00, i10, left);
-      if (paired) {
-        subtractLanes<V>(cRe + step + at, r01, r11, left);
-        subtractLanes<V>(cIm + step + at, i01, i11, left);
-      }
+      const a = (<usize>(i * depth)) << 3;
+      multiplyTile<V>(TILE, LEFT + a, RIGHT + b, depth);
+      multiplyTile<V>(TILE_SECOND, LEFT_SECOND + a, RIGHT_SECOND + b, depth);
+      multiplyTile<V>(TILE_THIRD, LEFT_THIRD + a, RIGHT_THIRD + b, depth);
+      combineTiles<V>(sign, t);
+      const at = (<usize>(i + j * cStride)) << 3;
+      const tileRows = min(strip, rows - i);
+      const tileColumns = min(TILE_COLUMNS, columns - j);
+      subtractTile<V>(cRe + at, TILE_SECOND, cStride, tileRows, tileColumns);
+      subtractTile<V>(cIm + at, TILE_THIRD, cStride, tileRows, tileColumns);
     }
-    cRe += step << 1;
-    cIm += step << 1;
+  }
+}
+
+/** Real part into the second tile, imaginary part into the third; `sign` is that of the imaginary parts of op(A). */
+function combineTiles<V>(sign: f64, t: f64): void {
+  const s = splat<V>(sign);
+  const st2 = splat<V>(sign * t * t);
+  const inverse = splat<V>(1 / t);
+  const bytes: usize = 2 * sizeof<V>() * <usize>TILE_COLUMNS;
+  for (let p: usize = 0; p < bytes; p += sizeof<V>()) {
+    const first = load<V>(TILE + p);
+    const second = load<V>(TILE_SECOND + p);
+    const both = subtract<V>(load<V>(TILE_THIRD + p), first);
+    store<V>(TILE_SECOND + p, subtract<V>(first, multiply<V>(s, second)));
+    store<V>(TILE_THIRD + p, multiply<V>(inverse, subtract<V>(both, multiply<V>(st2, second))));
   }
 }

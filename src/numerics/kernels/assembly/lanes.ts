@@ -76,23 +76,6 @@ export function sumOfLanes<V>(a: V): f64 {
   return <f64>a;
 }
 
-/** Subtracts two neighbouring groups of lanes from memory, of whose doubles `left` exist. */
-export function subtractLanes<V>(at: usize, first: V, second: V, left: i32): void {
-  const width = widthOf<V>();
-  if (left >= 2 * width) {
-    store<V>(at, subtract<V>(load<V>(at), first));
-    store<V>(at + sizeof<V>(), subtract<V>(load<V>(at + sizeof<V>()), second));
-    return;
-  }
-  if (isVector<V>()) {
-    if (left > 0) store<f64>(at, load<f64>(at) - f64x2.extract_lane(first, 0));
-    if (left > 1) store<f64>(at, load<f64>(at, 8) - f64x2.extract_lane(first, 1), 8);
-    if (left > 2) store<f64>(at, load<f64>(at, 16) - f64x2.extract_lane(second, 0), 16);
-  } else {
-    store<V>(at, subtract<V>(load<V>(at), first));
-  }
-}
-
 /** The modulus of every lane. */
 export function magnitude<V>(a: V): V {
   if (isVector<V>()) return f64x2.abs(a);

@@ -1,5 +1,25 @@
 /** Where the kernels keep their packed panels; what the caller places in the memory starts at `FREE`. */
 
-export const PACKED_LEFT: usize = 1024;
-export const PACKED_RIGHT: usize = PACKED_LEFT + 64 * 64 * 16;
-export const FREE: usize = PACKED_RIGHT + 64 * 514 * 16;
+/** Depth, rows and columns packed at a time: the rows stay in the first-level cache, the columns in the second. */
+export const DEPTH: i32 = 64;
+export const ROWS: i32 = 32;
+export const COLUMNS: i32 = 480;
+
+/** Columns of a tile of the result; its rows are two vectors. Separate products and sums need more registers. */
+export const TILE_COLUMNS: i32 = ASC_FEATURE_RELAXED_SIMD ? 6 : 4;
+
+const LEFT_BYTES: usize = 64 * 32 * 8;
+const RIGHT_BYTES: usize = 64 * 480 * 8;
+const TILE_BYTES: usize = 6 * 4 * 8;
+
+/** Three planes each: of a complex matrix the real parts, the imaginary parts, and their sums. */
+export const LEFT: usize = 1024;
+export const LEFT_SECOND: usize = LEFT + LEFT_BYTES;
+export const LEFT_THIRD: usize = LEFT_SECOND + LEFT_BYTES;
+export const RIGHT: usize = LEFT_THIRD + LEFT_BYTES;
+export const RIGHT_SECOND: usize = RIGHT + RIGHT_BYTES;
+export const RIGHT_THIRD: usize = RIGHT_SECOND + RIGHT_BYTES;
+export const TILE: usize = RIGHT_THIRD + RIGHT_BYTES;
+export const TILE_SECOND: usize = TILE + TILE_BYTES;
+export const TILE_THIRD: usize = TILE_SECOND + TILE_BYTES;
+export const FREE: usize = TILE_THIRD + TILE_BYTES;

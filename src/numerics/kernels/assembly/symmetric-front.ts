@@ -12,10 +12,10 @@ import { larger, largestLane, magnitude, widthOf, zero } from "./lanes";
 import { subtractOne } from "./real-triangles";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
-const PANEL: i32 = 48;
-const BLOCK: i32 = 8;
+const PANEL: i32 = 60;
+const BLOCK: i32 = 12;
 /** Columns of the rest updated at a time; what lies above the diagonal is wasted. */
-const UPDATE_COLUMNS: i32 = 64;
+const UPDATE_COLUMNS: i32 = 60;
 /** No entry of L may exceed the inverse of this. */
 const THRESHOLD: f64 = 0.01;
 /** A diagonal entry is taken without looking for a 2×2 pivot from this share of its column on. */
