@@ -190,7 +190,7 @@ export function singularMotion(
   for (let i = 0; i < rows; i++) x.re[i] = 2 * random.uniform() - 1;
   const { backwardError } = factor.solveInPlace(x);
   const largest = x.re.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
-  if (factor.perturbedPivots === 0 && backwardError < 1e-8 && largest < singularGrowth) return null;
+  if (factor.negligiblePivots === 0 && backwardError < 1e-8 && largest < singularGrowth) return null;
   return Int32Array.from(x.re.keys())
     .filter((i) => Math.abs(x.re[i]) >= 0.3 * largest)
     .sort((i, j) => Math.abs(x.re[j]) - Math.abs(x.re[i]))

@@ -38,7 +38,7 @@ function complexRow({ pattern, groups, dynamic }: BenchmarkModel): Row {
     stored: factorisation.nonzeros,
     operations: 8 * updates(analysis),
     backwardError: complexBackwardError(pattern, dynamic, x, given),
-    remark: `${refinements} refinements, ${factorisation.perturbedPivots} perturbed pivots`,
+    remark: `${refinements} refinements, ${factorisation.negligiblePivots} negligible pivots`,
   };
 }
 

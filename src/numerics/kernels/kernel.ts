@@ -47,7 +47,6 @@ export interface KernelFunctions {
     tiny: number,
     isRoot: number,
   ): number;
-  perturbedPivots(): number;
   eliminateSymmetric(
     front: number,
     order: number,

@@ -19,13 +19,16 @@ import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
 
 export type { SolveReport } from "./backward-error.js";
 
+/** In units of ‖A‖∞ of the scaled matrix. */
+const NEGLIGIBLE_PIVOT: number = 8 * Number.EPSILON;
+
 /** A = L U, ready to solve. */
 export interface ComplexFactorisation {
   readonly order: number;
   /** Stored entries of L and U. */
   readonly nonzeros: number;
-  /** Pivots that were negligible and were replaced by eps·‖A‖ (of the scaled matrix): A is singular to working precision. */
-  readonly perturbedPivots: number;
+  /** Pivots of at most 8 eps·‖A‖∞ of the scaled matrix (those below eps are replaced): with any A is singular to working precision. */
+  readonly negligiblePivots: number;
   /** ln |det A|. */
   readonly logAbsDet: number;
   /** Argument of det A in (−π, π] [rad]. */
@@ -63,7 +66,7 @@ export function factorComplex(
   return {
     order: analysis.order,
     nonzeros: factor.nonzeros,
-    perturbedPivots: factor.perturbedPivots,
+    negligiblePivots: negligiblePivotsOf(factor, NEGLIGIBLE_PIVOT * (scaled.norm > 0 ? scaled.norm : 1)),
     logAbsDet: determinant.logAbs,
     phaseDet: determinant.phase,
     solveInPlace: (b) => solve(b, false),
@@ -87,18 +90,25 @@ function moduli({ re, im }: ComplexValues): Float64Array {
   return modulus;
 }
 
-function scaledValues(pattern: SparsePattern, values: ComplexValues, scale: Float64Array): ComplexValues {
+/** D A D with D = diag(scale), and a bound of its infinity norm. */
+function scaledValues(
+  pattern: SparsePattern,
+  values: ComplexValues,
+  scale: Float64Array,
+): ComplexValues & { readonly norm: number } {
   const { cols, colStart, rowIndex } = pattern;
   const re = new Float64Array(rowIndex.length);
   const im = new Float64Array(rowIndex.length);
+  const rowSum = new Float64Array(cols);
   for (let j = 0; j < cols; j++) {
     for (let p = colStart[j]; p < colStart[j + 1]; p++) {
       const factor = scale[rowIndex[p]] * scale[j];
       re[p] = values.re[p] * factor;
       im[p] = values.im[p] * factor;
+      rowSum[rowIndex[p]] += Math.abs(re[p]) + Math.abs(im[p]);
     }
   }
-  return { re, im };
+  return { re, im, norm: rowSum.reduce((most, sum) => Math.max(most, sum), 0) };
 }
 
 /** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
@@ -129,12 +139,11 @@ class ComplexMultifrontal {
       re: new FactorStore(analysis.predictedNonzeros),
       im: new FactorStore(analysis.predictedNonzeros),
       nonzeros: 0,
-      perturbedPivots: 0,
     };
   }
 
   factor(): ComplexFactor {
-    const { analysis, factorOut, workspace } = this;
+    const { analysis, factorOut } = this;
     const children = childrenOf(analysis);
     for (let s = 0; s < analysis.fronts; s++) {
       const layout = layOutFront(analysis, s, children[s], factorOut.fronts, this.placeOf);
@@ -142,7 +151,6 @@ class ComplexMultifrontal {
       this.enterEntries(s, layout, front);
       const base = this.addUpdates(layout, children[s], front);
       const pivots = this.eliminate(layout, front, analysis.parent[s] < 0);
-      factorOut.perturbedPivots += workspace.kernel.perturbedPivots();
       this.keepFactor(layout, front, pivots);
       this.packUpdate(layout.order, front, pivots, base);
     }
@@ -256,6 +264,18 @@ interface FrontPlace {
   readonly im: number;
   readonly rowIds: number;
   readonly colIds: number;
+}
+
+function negligiblePivotsOf(factor: ComplexFactor, bound: number): number {
+  let count = 0;
+  for (const { order, pivots, chunk, at } of factor.fronts) {
+    const re = factor.re.array(chunk);
+    const im = factor.im.array(chunk);
+    for (let p = at; p < at + pivots * (order + 1); p += order + 1) {
+      if (re[p] * re[p] + im[p] * im[p] <= bound * bound) count++;
+    }
+  }
+  return count;
 }
 
 /** det A = det(L U) / det(D)² times the sign of the permutation from pivot rows to pivot columns. */

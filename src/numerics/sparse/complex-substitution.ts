@@ -22,7 +22,6 @@ export interface ComplexFactor {
   readonly re: FactorStore;
   readonly im: FactorStore;
   nonzeros: number;
-  perturbedPivots: number;
 }
 
 /** Right-hand sides taken through the tree together. */

@@ -31,15 +31,9 @@ let colIds: usize = 0;
 let tiny: f64 = 0;
 /** Only negligible columns are left in a root. */
 let forced: bool = false;
-let perturbed: i32 = 0;
 /** Columns from here to the end of the block have no acceptable pivot. */
 let rejectedFrom: i32 = 0;
 let closed: bool = false;
-
-/** Replaced pivots of the last front. */
-export function perturbedPivots(): i32 {
-  return perturbed;
-}
 
 /**
  * Leaves L (unit diagonal implied) and U in the first columns and rows, the update in the rest;
@@ -65,7 +59,6 @@ export function eliminateComplex<V>(
   colIds = frontColIds;
   tiny = tinyPivot;
   forced = false;
-  perturbed = 0;
   let done = 0;
   // Columns from here on were refused since the candidates were last gathered.
   let candidatesEnd = summed;
@@ -191,7 +184,6 @@ function perturb(k: i32, row: i32): i32 {
   const at = (<usize>(k * order + row)) << 3;
   store<f64>(re + at, tiny);
   store<f64>(im + at, 0);
-  perturbed++;
   return row;
 }
 

@@ -7,7 +7,6 @@ import * as real from "./real-triangles";
 import { eliminateSymmetric as symmetricFront } from "./symmetric-front";
 
 export { addLowerUpdate, addSquareUpdate, packLower, packRows, packSquare } from "./assembling";
-export { perturbedPivots } from "./complex-front";
 export { setOutsideFrom } from "./host";
 export { perturbedSymmetricPivots, symmetricScratch } from "./symmetric-front";
 
