@@ -36,7 +36,7 @@ class SeparatorRefinement {
   private readonly total: number;
   private readonly partWeight: Float64Array = new Float64Array(3);
   private readonly heap: VertexHeap;
-  private separator: Int32Array;
+  private readonly separator: Int32Array;
   private size = 0;
   /** Vertices in the order of their moves in this pass, and the part each came from. */
   private moved: Int32Array = new Int32Array(64);
