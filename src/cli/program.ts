@@ -1,5 +1,6 @@
 import { Command } from "commander";
 import { checkCommand } from "./check.js";
+import { machineCommand } from "./machine.js";
 import { marginCommand } from "./margin.js";
 import { sampleCommand } from "./sample.js";
 import { tuneCommand } from "./tune.js";
@@ -22,9 +23,8 @@ export function buildProgram(): Command {
     )
     .version(version)
     .addHelpText("after", nextSteps);
-  for (const command of [checkCommand(), marginCommand(), tuneCommand(), sampleCommand()]) {
-    program.addCommand(command);
-  }
+  const commands = [checkCommand(), marginCommand(), tuneCommand(), sampleCommand(), machineCommand()];
+  for (const command of commands) program.addCommand(command);
   for (const command of [program, ...program.commands]) {
     command.exitOverride().showHelpAfterError("(add --help for what there is)");
   }
