@@ -69,6 +69,8 @@ export interface KernelFunctions {
     crossing: number,
   ): void;
   packSquare(to: number, from: number, stride: number, size: number): void;
+  gatherRows(to: number, stride: number, from: number, columns: number, ids: number, count: number): void;
+  scatterRows(to: number, columns: number, ids: number, from: number, stride: number, count: number): void;
   packRows(to: number, from: number, stride: number, rows: number, columns: number): void;
   packLower(to: number, from: number, stride: number, size: number): void;
   subtractComplex: ComplexProduct;

@@ -8,7 +8,7 @@ import type { ComplexMatrix } from "../dense/matrix.js";
 import type { ComplexSolve } from "../kernels/kernel.js";
 import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { FactorStore } from "./factor-store.js";
-import type { EliminatedFront } from "./front-stack.js";
+import { columnsTogether, type EliminatedFront } from "./front-stack.js";
 
 /** A front whose columns of L and U₁₁ (order×pivots) and U₁₂ (pivots×rest) start at `at` of the chunk. */
 export interface ComplexFrontFactor extends EliminatedFront {
@@ -24,8 +24,6 @@ export interface ComplexFactor {
   nonzeros: number;
 }
 
-/** Right-hand sides taken through the tree together. */
-const BLOCK_COLUMNS = 48;
 /** Columns of a factor brought into the workspace at a time. */
 const PANEL = 24;
 
@@ -36,58 +34,77 @@ export function solveWithFactor(
   x: ComplexMatrix,
   adjoint: boolean,
 ): void {
-  const n = factor.order;
-  for (let first = 0; first < x.cols; first += BLOCK_COLUMNS) {
-    const cols = Math.min(BLOCK_COLUMNS, x.cols - first);
-    const re = x.re.subarray(first * n, (first + cols) * n);
-    const im = x.im.subarray(first * n, (first + cols) * n);
-    scaleRows(scale, re, im, cols);
+  const most = columnsTogether(factor.order);
+  for (let first = 0; first < x.cols; first += most) {
+    const cols = Math.min(most, x.cols - first);
     withWorkspace((workspace) => {
-      const substitution = new Substitution(factor, { rows: n, cols, re, im }, workspace);
+      const substitution = new Substitution(factor, cols, workspace);
+      substitution.load(x, first, scale);
       if (adjoint) substitution.solveAdjoint();
       else substitution.solve();
+      substitution.store(x, first, scale);
     });
-    scaleRows(scale, re, im, cols);
-  }
-}
-
-function scaleRows(scale: Float64Array, re: Float64Array, im: Float64Array, cols: number): void {
-  for (let c = 0, p = 0; c < cols; c++) {
-    for (let i = 0; i < scale.length; i++, p++) {
-      re[p] *= scale[i];
-      im[p] *= scale[i];
-    }
   }
 }
 
 class Substitution {
   private readonly factor: ComplexFactor;
   private readonly workspace: Workspace;
-  /** Right-hand sides, overwritten by the result of the forward pass, then by the solution. */
-  private readonly b: ComplexMatrix;
-  private readonly x: ComplexMatrix;
   private readonly cols: number;
   /** Rows of the largest front: distance between the columns of the local rows. */
   private readonly stride: number;
-  /** Byte addresses of the gathered rows of one front, and of the columns of its factor in use. */
+  /**
+   * Byte addresses: right-hand sides, overwritten by the result of the forward pass, and solution, n rows of
+   * the real, then the imaginary parts of all columns; the gathered rows of one front (real columns, then
+   * imaginary ones) and their numbers; the columns of its factor in use.
+   */
+  private readonly b: number;
+  private readonly x: number;
   private readonly localRe: number;
   private readonly localIm: number;
+  private readonly ids: number;
   private readonly panelRe: number;
   private readonly panelIm: number;
 
-  constructor(factor: ComplexFactor, b: ComplexMatrix, workspace: Workspace) {
-    const { rows, cols } = b;
+  constructor(factor: ComplexFactor, cols: number, workspace: Workspace) {
     this.factor = factor;
     this.workspace = workspace;
-    this.b = b;
     this.cols = cols;
-    this.x = { rows, cols, re: new Float64Array(rows * cols), im: new Float64Array(rows * cols) };
     this.stride = factor.fronts.reduce((most, { order }) => Math.max(most, order), 0);
-    this.localRe = workspace.begin;
+    this.b = workspace.begin;
+    this.x = this.b + 16 * factor.order * cols;
+    this.localRe = this.x + 16 * factor.order * cols;
     this.localIm = this.localRe + 8 * this.stride * cols;
     this.panelRe = this.localIm + 8 * this.stride * cols;
     this.panelIm = this.panelRe + 8 * this.stride * PANEL;
-    workspace.ensure(this.panelIm + 8 * this.stride * PANEL);
+    this.ids = this.panelIm + 8 * this.stride * PANEL;
+    workspace.ensure(this.ids + 4 * this.stride);
+  }
+
+  /** Takes these columns in, scaled. */
+  load({ rows, re, im }: ComplexMatrix, first: number, scale: Float64Array): void {
+    const { cols } = this;
+    const { doubles } = this.workspace;
+    for (let c = 0; c < cols; c++) {
+      const column = (first + c) * rows;
+      for (let i = 0, p = this.b / 8 + c; i < rows; i++, p += 2 * cols) {
+        doubles[p] = re[column + i] * scale[i];
+        doubles[p + cols] = im[column + i] * scale[i];
+      }
+    }
+  }
+
+  /** Gives the solution back, scaled. */
+  store({ rows, re, im }: ComplexMatrix, first: number, scale: Float64Array): void {
+    const { cols } = this;
+    const { doubles } = this.workspace;
+    for (let c = 0; c < cols; c++) {
+      const column = (first + c) * rows;
+      for (let i = 0, p = this.x / 8 + c; i < rows; i++, p += 2 * cols) {
+        re[column + i] = doubles[p] * scale[i];
+        im[column + i] = doubles[p + cols] * scale[i];
+      }
+    }
   }
 
   solve(): void {
@@ -96,17 +113,15 @@ class Substitution {
     for (const front of fronts) {
       this.gather(b, front.rowIds, 0, front.order);
       this.forward(front);
-      this.scatter(b, front.rowIds, 0, front.order);
+      this.scatter(b, front.order);
     }
     for (let s = fronts.length - 1; s >= 0; s--) {
       const { rowIds, colIds, pivots, order } = fronts[s];
       this.gather(b, rowIds, 0, pivots);
       this.gather(x, colIds, pivots, order);
       this.backward(fronts[s]);
-      this.scatter(x, colIds, 0, pivots);
+      this.scatter(x, pivots, colIds);
     }
-    b.re.set(x.re);
-    b.im.set(x.im);
   }
 
   solveAdjoint(): void {
@@ -115,43 +130,30 @@ class Substitution {
     for (const front of fronts) {
       this.gather(b, front.colIds, 0, front.order);
       this.forwardAdjoint(front);
-      this.scatter(b, front.colIds, 0, front.order);
+      this.scatter(b, front.order);
     }
     for (let s = fronts.length - 1; s >= 0; s--) {
       const { rowIds, colIds, pivots, order } = fronts[s];
       this.gather(b, colIds, 0, pivots);
       this.gather(x, rowIds, pivots, order);
       this.backwardAdjoint(fronts[s]);
-      this.scatter(x, rowIds, 0, pivots);
-    }
-    b.re.set(x.re);
-    b.im.set(x.im);
-  }
-
-  private gather(source: ComplexMatrix, ids: Int32Array, from: number, to: number): void {
-    const { doubles } = this.workspace;
-    for (let c = 0; c < this.cols; c++) {
-      const column = c * source.rows;
-      const toRe = this.localRe / 8 + c * this.stride;
-      const toIm = this.localIm / 8 + c * this.stride;
-      for (let i = from; i < to; i++) {
-        doubles[toRe + i] = source.re[column + ids[i]];
-        doubles[toIm + i] = source.im[column + ids[i]];
-      }
+      this.scatter(x, pivots, rowIds);
     }
   }
 
-  private scatter(target: ComplexMatrix, ids: Int32Array, from: number, to: number): void {
-    const { doubles } = this.workspace;
-    for (let c = 0; c < this.cols; c++) {
-      const column = c * target.rows;
-      const fromRe = this.localRe / 8 + c * this.stride;
-      const fromIm = this.localIm / 8 + c * this.stride;
-      for (let i = from; i < to; i++) {
-        target.re[column + ids[i]] = doubles[fromRe + i];
-        target.im[column + ids[i]] = doubles[fromIm + i];
-      }
-    }
+  /** The local rows from `from` to `to` by their numbers, which stay in the workspace. */
+  private gather(source: number, ids: Int32Array, from: number, to: number): void {
+    const { kernel, integers } = this.workspace;
+    const numbers = from === 0 && to === ids.length ? ids : ids.subarray(from, to);
+    integers.set(numbers, this.ids / 4);
+    kernel.gatherRows(this.localRe + 8 * from, this.stride, source, 2 * this.cols, this.ids, to - from);
+  }
+
+  /** The first local rows back to where they were gathered, or to these numbers. */
+  private scatter(target: number, rows: number, ids?: Int32Array): void {
+    const { kernel, integers } = this.workspace;
+    if (ids !== undefined) integers.set(ids.subarray(0, rows), this.ids / 4);
+    kernel.scatterRows(target, 2 * this.cols, this.ids, this.localRe, this.stride, rows);
   }
 
   /** w₁ ← L₁₁⁻¹ w₁, w₂ ← w₂ − L₂₁ w₁. */

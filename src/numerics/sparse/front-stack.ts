@@ -83,3 +83,8 @@ export function updatePlacesInto(
   for (let t = 0; t < delayed; t++) places[at + t] = delayedAt + t;
   for (let t = pivots + delayed; t < order; t++) places[at + t - pivots] = placeOf[rowIds[t]];
 }
+
+/** Right-hand sides that a substitution takes through the tree together: fewer where their rows would fill the memory. */
+export function columnsTogether(order: number): number {
+  return Math.max(4, Math.min(48, Math.floor(2 ** 24 / order)));
+}

@@ -3,7 +3,7 @@
 import type { DenseMatrix } from "../dense/matrix.js";
 import { type Workspace, withWorkspace } from "../kernels/workspace.js";
 import type { FactorStore } from "./factor-store.js";
-import type { EliminatedFront } from "./front-stack.js";
+import { columnsTogether, type EliminatedFront } from "./front-stack.js";
 
 /** A front whose columns of L (order×pivots) start at `at` of the chunk. */
 export interface SymmetricFrontFactor extends EliminatedFront {
@@ -21,47 +21,70 @@ export interface SymmetricFactor {
   perturbedPivots: number;
 }
 
-/** Right-hand sides taken through the tree together. */
-const BLOCK_COLUMNS = 64;
 /** Columns of a factor brought into the workspace at a time. */
 const PANEL = 24;
 
 /** X ← S (L D Lᵀ)⁻¹ S X with S = diag(scale); X is n×k. */
 export function solveWithSymmetricFactor(factor: SymmetricFactor, scale: Float64Array, x: DenseMatrix): void {
-  const n = factor.order;
-  for (let first = 0; first < x.cols; first += BLOCK_COLUMNS) {
-    const cols = Math.min(BLOCK_COLUMNS, x.cols - first);
-    const values = x.values.subarray(first * n, (first + cols) * n);
-    scaleRows(scale, values, cols);
-    withWorkspace((workspace) => new Substitution(factor, values, cols, workspace).solve());
-    scaleRows(scale, values, cols);
+  const most = columnsTogether(factor.order);
+  for (let first = 0; first < x.cols; first += most) {
+    const cols = Math.min(most, x.cols - first);
+    withWorkspace((workspace) => {
+      const substitution = new Substitution(factor, cols, workspace);
+      substitution.load(x, first, scale);
+      substitution.solve();
+      substitution.store(x, first, scale);
+    });
   }
-}
-
-function scaleRows(scale: Float64Array, values: Float64Array, cols: number): void {
-  for (let c = 0, p = 0; c < cols; c++) for (let i = 0; i < scale.length; i++, p++) values[p] *= scale[i];
 }
 
 class Substitution {
   private readonly factor: SymmetricFactor;
   private readonly workspace: Workspace;
-  private readonly x: Float64Array;
   private readonly cols: number;
   /** Rows of the largest front: distance between the columns of the local rows. */
   private readonly stride: number;
-  /** Byte addresses of the gathered rows of one front, and of the columns of its factor in use. */
+  /**
+   * Byte addresses: right-hand sides, overwritten by the solution, row by row; the gathered rows of one front
+   * and their numbers; the columns of its factor in use.
+   */
+  private readonly x: number;
   private readonly local: number;
+  private readonly ids: number;
   private readonly panel: number;
 
-  constructor(factor: SymmetricFactor, x: Float64Array, cols: number, workspace: Workspace) {
+  constructor(factor: SymmetricFactor, cols: number, workspace: Workspace) {
     this.factor = factor;
     this.workspace = workspace;
-    this.x = x;
     this.cols = cols;
     this.stride = factor.fronts.reduce((most, { order }) => Math.max(most, order), 0);
-    this.local = workspace.begin;
+    this.x = workspace.begin;
+    this.local = this.x + 8 * factor.order * cols;
     this.panel = this.local + 8 * this.stride * cols;
-    workspace.ensure(this.panel + 8 * this.stride * PANEL);
+    this.ids = this.panel + 8 * this.stride * PANEL;
+    workspace.ensure(this.ids + 4 * this.stride);
+  }
+
+  /** Takes these columns in, scaled. */
+  load({ rows, values }: DenseMatrix, first: number, scale: Float64Array): void {
+    const { cols } = this;
+    const { doubles } = this.workspace;
+    for (let c = 0; c < cols; c++) {
+      const column = (first + c) * rows;
+      for (let i = 0, p = this.x / 8 + c; i < rows; i++, p += cols)
+        doubles[p] = values[column + i] * scale[i];
+    }
+  }
+
+  /** Gives the solution back, scaled. */
+  store({ rows, values }: DenseMatrix, first: number, scale: Float64Array): void {
+    const { cols } = this;
+    const { doubles } = this.workspace;
+    for (let c = 0; c < cols; c++) {
+      const column = (first + c) * rows;
+      for (let i = 0, p = this.x / 8 + c; i < rows; i++, p += cols)
+        values[column + i] = doubles[p] * scale[i];
+    }
   }
 
   solve(): void {
@@ -70,33 +93,24 @@ class Substitution {
       this.gather(front);
       this.forward(front);
       this.divide(front);
-      this.scatter(front, front.order);
+      this.scatter(front.order);
     }
     for (let s = fronts.length - 1; s >= 0; s--) {
       this.gather(fronts[s]);
       this.backward(fronts[s]);
-      this.scatter(fronts[s], fronts[s].pivots);
+      this.scatter(fronts[s].pivots);
     }
   }
 
   private gather({ rowIds, order }: SymmetricFrontFactor): void {
-    const { x } = this;
-    const { doubles } = this.workspace;
-    for (let c = 0; c < this.cols; c++) {
-      const from = c * this.factor.order;
-      const to = this.local / 8 + c * this.stride;
-      for (let i = 0; i < order; i++) doubles[to + i] = x[from + rowIds[i]];
-    }
+    const { kernel, integers } = this.workspace;
+    integers.set(rowIds, this.ids / 4);
+    kernel.gatherRows(this.local, this.stride, this.x, this.cols, this.ids, order);
   }
 
-  private scatter({ rowIds }: SymmetricFrontFactor, rows: number): void {
-    const { x } = this;
-    const { doubles } = this.workspace;
-    for (let c = 0; c < this.cols; c++) {
-      const to = c * this.factor.order;
-      const from = this.local / 8 + c * this.stride;
-      for (let i = 0; i < rows; i++) x[to + rowIds[i]] = doubles[from + i];
-    }
+  /** The first rows back to where they were gathered. */
+  private scatter(rows: number): void {
+    this.workspace.kernel.scatterRows(this.x, this.cols, this.ids, this.local, this.stride, rows);
   }
 
   /** w₁ ← L₁₁⁻¹ w₁, w₂ ← w₂ − L₂₁ w₁. */

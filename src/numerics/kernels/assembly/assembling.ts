@@ -1,4 +1,4 @@
-/** Updates on their way from a child's front to its parent's: added by places, and packed together. */
+/** Moves between fronts and what lies around them: updates added by places and packed together, rows of right-hand sides. */
 
 /** target[places[i], places[j]] += update[i, j] for a size×size update; `places` holds 32-bit integers. */
 export function addSquareUpdate(target: usize, stride: i32, update: usize, size: i32, places: usize): void {
@@ -58,5 +58,33 @@ export function packRows(to: usize, from: usize, stride: i32, rows: i32, columns
     for (let i: usize = 0; i < bytes; i += 8) store<f64>(to + i, load<f64>(from + i));
     to += bytes;
     from += (<usize>stride) << 3;
+  }
+}
+
+/** Rows of a row-major array, by their numbers in `ids` (32-bit), into a column-major block. */
+export function gatherRows(to: usize, stride: i32, from: usize, columns: i32, ids: usize, count: i32): void {
+  const step = (<usize>stride) << 3;
+  for (let i = 0; i < count; i++) {
+    let source = from + ((<usize>(load<i32>(ids + ((<usize>i) << 2)) * columns)) << 3);
+    let target = to + ((<usize>i) << 3);
+    for (let c = 0; c < columns; c++) {
+      store<f64>(target, load<f64>(source));
+      source += 8;
+      target += step;
+    }
+  }
+}
+
+/** The other way round. */
+export function scatterRows(to: usize, columns: i32, ids: usize, from: usize, stride: i32, count: i32): void {
+  const step = (<usize>stride) << 3;
+  for (let i = 0; i < count; i++) {
+    let target = to + ((<usize>(load<i32>(ids + ((<usize>i) << 2)) * columns)) << 3);
+    let source = from + ((<usize>i) << 3);
+    for (let c = 0; c < columns; c++) {
+      store<f64>(target, load<f64>(source));
+      target += 8;
+      source += step;
+    }
   }
 }

@@ -6,7 +6,15 @@ import { FREE } from "./layout";
 import * as real from "./real-triangles";
 import { eliminateSymmetric as symmetricFront } from "./symmetric-front";
 
-export { addLowerUpdate, addSquareUpdate, packLower, packRows, packSquare } from "./assembling";
+export {
+  addLowerUpdate,
+  addSquareUpdate,
+  gatherRows,
+  packLower,
+  packRows,
+  packSquare,
+  scatterRows,
+} from "./assembling";
 export { setOutsideFrom } from "./host";
 export { perturbedSymmetricPivots, symmetricScratch } from "./symmetric-front";
 
