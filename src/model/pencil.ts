@@ -1,6 +1,7 @@
 import type { ComplexMatrix, ComplexVector } from "../numerics/dense/matrix.js";
 import { complexVector } from "../numerics/dense/matrix.js";
 import type { RealOperator } from "../numerics/real-operator.js";
+import { addPencilProductInto } from "../numerics/sparse/real-sparse-products.js";
 
 /** P(s) factored at one s. Both solves overwrite their argument (n×k). */
 export interface PencilFactor {
@@ -80,9 +81,15 @@ function combine(
   c: number,
   x: ComplexVector,
 ): ComplexVector {
-  const y = complexVector(pencil.order);
-  pencil.mass.addInto(y, aRe, aIm, x);
-  pencil.velocity.addInto(y, bRe, bIm, x);
-  if (c !== 0) pencil.displacement.addInto(y, c, 0, x);
+  const { order, mass, velocity, displacement } = pencil;
+  const y = complexVector(order);
+  const [m, v, s] = [mass.sparse, velocity.sparse, displacement.sparse];
+  if (c !== 0 && m !== null && m.rowIndex === v?.rowIndex && m.rowIndex === s?.rowIndex) {
+    addPencilProductInto(y, [aRe, aIm, bRe, bIm, c], m, v, s, x);
+    return y;
+  }
+  mass.addInto(y, aRe, aIm, x);
+  velocity.addInto(y, bRe, bIm, x);
+  if (c !== 0) displacement.addInto(y, c, 0, x);
   return y;
 }

@@ -13,6 +13,8 @@ export interface RealOperator {
   addTransposedInto(y: ComplexVector, cRe: number, cIm: number, x: ComplexVector): void;
   /** Largest absolute row or column sum, an upper bound of the 2-norm. */
   readonly normBound: number;
+  /** A itself where it is sparse: matrices on one pattern can share a pass. */
+  readonly sparse: SparseMatrix | null;
 }
 
 export function sparseOperator(a: SparseMatrix): RealOperator {
@@ -26,6 +28,7 @@ export function sparseOperator(a: SparseMatrix): RealOperator {
       normBound ??= sparseNormBound(a);
       return normBound;
     },
+    sparse: a,
   };
 }
 
@@ -40,6 +43,7 @@ export function denseOperator(a: DenseMatrix): RealOperator {
       normBound ??= denseNormBound(a);
       return normBound;
     },
+    sparse: null,
   };
 }
 

@@ -94,3 +94,34 @@ function addFourColumns(y: DenseMatrix, a: SparseMatrix, x: DenseMatrix, first: 
     }
   }
 }
+
+/**
+ * y ← y + (a M + b C + c S) x for three matrices on one pattern, a = aRe + i aIm and so on; y and x must not alias.
+ * One pass over the pattern in place of three.
+ */
+export function addPencilProductInto(
+  y: ComplexVector,
+  [aRe, aIm, bRe, bIm, c]: readonly [number, number, number, number, number],
+  mass: SparseMatrix,
+  velocity: SparseMatrix,
+  displacement: SparseMatrix,
+  x: ComplexVector,
+): void {
+  const { cols, colStart, rowIndex, values: m } = mass;
+  const v = velocity.values;
+  const s = displacement.values;
+  const { re: yRe, im: yIm } = y;
+  const { re: xRe, im: xIm } = x;
+  for (let j = 0; j < cols; j++) {
+    const re = xRe[j];
+    const im = xIm[j];
+    const end = colStart[j + 1];
+    for (let p = colStart[j]; p < end; p++) {
+      const i = rowIndex[p];
+      const pRe = aRe * m[p] + bRe * v[p] + c * s[p];
+      const pIm = aIm * m[p] + bIm * v[p];
+      yRe[i] += pRe * re - pIm * im;
+      yIm[i] += pRe * im + pIm * re;
+    }
+  }
+}
