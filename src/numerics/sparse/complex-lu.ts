@@ -59,7 +59,11 @@ export function factorComplex(
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const scaled = scaledValues(pattern, values, scale);
   const factor = withWorkspace((workspace) => new ComplexMultifrontal(analysis, scaled, workspace).factor());
-  const determinant = determinantOf(factor, exponents);
+  let known: Determinant | undefined;
+  const determinant = (): Determinant => {
+    known ??= determinantOf(factor, exponents);
+    return known;
+  };
   const refinement = new ComplexRefinement(pattern, values, scale);
   const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport =>
     refinement.solve(b, adjoint, (x) => solveWithFactor(factor, scale, x, adjoint));
@@ -67,8 +71,12 @@ export function factorComplex(
     order: analysis.order,
     nonzeros: factor.nonzeros,
     negligiblePivots: negligiblePivotsOf(factor, NEGLIGIBLE_PIVOT * (scaled.norm > 0 ? scaled.norm : 1)),
-    logAbsDet: determinant.logAbs,
-    phaseDet: determinant.phase,
+    get logAbsDet() {
+      return determinant().logAbs;
+    },
+    get phaseDet() {
+      return determinant().phase;
+    },
     solveInPlace: (b) => solve(b, false),
     solveAdjointInPlace: (b) => solve(b, true),
   };
@@ -278,11 +286,13 @@ function negligiblePivotsOf(factor: ComplexFactor, bound: number): number {
   return count;
 }
 
+interface Determinant {
+  readonly logAbs: number;
+  readonly phase: number;
+}
+
 /** det A = det(L U) / det(D)² times the sign of the permutation from pivot rows to pivot columns. */
-function determinantOf(
-  factor: ComplexFactor,
-  exponents: Int32Array,
-): { readonly logAbs: number; readonly phase: number } {
+function determinantOf(factor: ComplexFactor, exponents: Int32Array): Determinant {
   let logAbs = 0;
   let angle = 0;
   const columnOf = new Int32Array(factor.order);

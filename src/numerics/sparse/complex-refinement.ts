@@ -43,8 +43,9 @@ export class ComplexRefinement {
     this.ones = new Float64Array(scale.length).fill(1);
     this.scale = scale;
     this.inverseScale = scale.map((d) => 1 / d);
-    this.norms = matrixNorms(pattern, values, this.ones);
-    this.scaledNorms = matrixNorms(pattern, values, scale);
+    const { given, scaled } = matrixNorms(pattern, values, scale);
+    this.norms = given;
+    this.scaledNorms = scaled;
   }
 
   /**
@@ -177,20 +178,32 @@ function columnNorm(x: ComplexMatrix, c: number, weight: Float64Array): number {
   return Math.sqrt(largest);
 }
 
-/** Norms of D A D with D = diag(scale). */
-function matrixNorms(pattern: SparsePattern, values: ComplexValues, scale: Float64Array): MatrixNorms {
-  const rowSum = new Float64Array(pattern.rows);
-  let adjoint = 0;
-  for (let j = 0; j < pattern.cols; j++) {
-    let columnSum = 0;
-    for (let p = pattern.colStart[j]; p < pattern.colStart[j + 1]; p++) {
-      const i = pattern.rowIndex[p];
-      const modulus =
-        Math.sqrt(values.re[p] * values.re[p] + values.im[p] * values.im[p]) * scale[i] * scale[j];
+/** Norms of A and of D A D with D = diag(scale). */
+function matrixNorms(
+  { rows, cols, colStart, rowIndex }: SparsePattern,
+  values: ComplexValues,
+  scale: Float64Array,
+): { readonly given: MatrixNorms; readonly scaled: MatrixNorms } {
+  const rowSum = new Float64Array(rows);
+  const scaledRowSum = new Float64Array(rows);
+  let [adjoint, scaledAdjoint] = [0, 0];
+  for (let j = 0; j < cols; j++) {
+    let [columnSum, scaledColumnSum] = [0, 0];
+    for (let p = colStart[j]; p < colStart[j + 1]; p++) {
+      const i = rowIndex[p];
+      const modulus = Math.sqrt(values.re[p] * values.re[p] + values.im[p] * values.im[p]);
       columnSum += modulus;
       rowSum[i] += modulus;
+      scaledColumnSum += modulus * scale[i];
+      scaledRowSum[i] += modulus * scale[j];
     }
     adjoint = Math.max(adjoint, columnSum);
+    scaledAdjoint = Math.max(scaledAdjoint, scaledColumnSum * scale[j]);
   }
-  return { plain: rowSum.reduce((a, b) => Math.max(a, b), 0), adjoint };
+  let [plain, scaledPlain] = [0, 0];
+  for (let i = 0; i < rows; i++) {
+    plain = Math.max(plain, rowSum[i]);
+    scaledPlain = Math.max(scaledPlain, scaledRowSum[i] * scale[i]);
+  }
+  return { given: { plain, adjoint }, scaled: { plain: scaledPlain, adjoint: scaledAdjoint } };
 }
