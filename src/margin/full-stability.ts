@@ -1,14 +1,10 @@
 import type { ModelState } from "../model/parametric-model.js";
 import type { AdaptiveModel } from "../reduction/adaptive-model.js";
+import { covers, mostOnStretch } from "./axis-walk.js";
 import { inBand } from "./band.js";
+import type { FullCrew } from "./full-tasks.js";
 import type { Setting } from "./measure.js";
-import {
-  type DiscEffort,
-  discDefaults,
-  type NearbyEigenvalue,
-  type Neighbourhood,
-  nearbyEigenvalues,
-} from "./nearby-eigenvalues.js";
+import type { NearbyEigenvalue, Neighbourhood } from "./nearby-eigenvalues.js";
 import { dampingRatio, isUnstable } from "./stability.js";
 
 /** An eigenvalue with Im ≥ 0 [1/s, rad/s]. */
@@ -39,27 +35,27 @@ export interface StabilityVerdict {
 const suspicious = 1e-3;
 /** Unstable modes just outside the band are common: they are looked for up to here. */
 export const outsideReach = 1.3;
-const mostShifts = 120;
-/** Some of them are left for suspects off the axis. */
-const mostOnAxis = 100;
-/** Where a disc does not reach back to the one before, more steps are cheaper than another factorisation. */
-const alongAxis = { steps: 36, mostSteps: 72 };
+/** Stretches of the axis walked independently; their number is fixed, so that the discs do not depend on the threads. */
+const STRETCHES = 4;
+/** Discs round suspects off the axis at most. */
+const mostSuspects = 20;
 
 /**
  * Covers the imaginary axis by shift-and-invert Arnoldi on the full model, so that what the reduced model missed is
  * found, and confirms or refutes every reduced eigenvalue that is unstable or nearly so (ζ < 1e-3) in the same way.
  */
-export function judgeStability(
+export async function judgeStability(
+  crew: FullCrew,
   adaptive: AdaptiveModel,
   state: ModelState,
   setting: Setting,
   reduced: { readonly re: Float64Array; readonly im: Float64Array },
-): StabilityVerdict {
+): Promise<StabilityVerdict> {
   const reach = outsideReach * setting.band.high;
   const all = eigenvalueList(reduced).filter(({ im }) => im <= reach);
   if (adaptive.exact) return verdictOf(all, [], setting, all.filter(isSuspect(setting)).length, 0);
   const suspects = all.filter(isSuspect(setting)).sort((a, b) => a.im - b.im);
-  const { neighbourhoods, open, walked } = coverSuspects(adaptive, state, setting, suspects, reach);
+  const { neighbourhoods, open, walked } = await coverSuspects(crew, state, setting, suspects, reach);
   // Discs reach further than the rule says; what lies there is counted by nobody.
   const found = distinctEigenvalues(neighbourhoods).filter(({ im }) => im <= reach);
   const rest = all.filter((value) => !neighbourhoods.some((area) => covers(area, value)));
@@ -74,63 +70,40 @@ function isSuspect(setting: Setting): (value: Eigenvalue) => boolean {
 }
 
 /** Discs along the axis, then round every suspect that none of them holds. */
-function coverSuspects(
-  adaptive: AdaptiveModel,
+async function coverSuspects(
+  crew: FullCrew,
   state: ModelState,
   setting: Setting,
   suspects: readonly Eigenvalue[],
   reach: number,
-): { neighbourhoods: Neighbourhood[]; open: Eigenvalue[]; walked: boolean } {
-  const pencil = adaptive.full.pencilAt(state);
-  const neighbourhoods: Neighbourhood[] = [];
-  const examine: Examine = (re, im, effort) => {
-    const seed = neighbourhoods.length + 1;
-    const area = nearbyEigenvalues(pencil, pencil.factor(re, im), setting.shift, seed, effort);
-    neighbourhoods.push(area);
-    return area.radius;
-  };
-  const walked = walkAxis(neighbourhoods, setting, reach, examine);
-  const open = suspects.filter((suspect) => {
-    const covered = () => neighbourhoods.some((area) => covers(area, suspect));
-    if (!covered() && neighbourhoods.length < mostShifts) {
-      examine(suspect.re, suspect.im * (1 + 1e-5) + 1e-6 * setting.shift, discDefaults);
-    }
-    return !covered();
-  });
-  return { neighbourhoods, open, walked };
-}
-
-/** Adds the disc round a shift and returns its radius. */
-type Examine = (re: number, im: number, effort: DiscEffort) => number;
-
-/**
- * Covers the axis up to `reach` with discs: most suspects lie in them, and so does an unstable eigenvalue that the
- * reduced model knows nothing of. False when the discs ran out.
- */
-function walkAxis(
-  neighbourhoods: readonly Neighbourhood[],
-  setting: Setting,
-  reach: number,
-  examine: Examine,
-): boolean {
-  // Where discs overlap by a tenth, they cover a strip beside the axis too.
-  const topOf = ({ shiftIm, radius }: Neighbourhood) => shiftIm + 0.9 * radius;
-  let stride = 0.04 * reach;
-  for (let at = 0; at < reach; ) {
-    const over = neighbourhoods.filter((area) => covers(area, { re: 0, im: at })).map(topOf);
-    const next = over.reduce((high, top) => Math.max(high, top), at);
-    if (next > at) {
-      at = next;
-      continue;
-    }
-    if (neighbourhoods.length >= mostOnAxis) return false;
-    const ahead = Math.min(0.8 * stride, 0.5 * (reach - at));
-    const centre = Math.max(at + ahead, 1e-3 * setting.shift);
-    const radius = examine(0, centre, { ...alongAxis, reach: (centre - at) / 0.89 });
-    // Too far ahead: a shorter stride closes the gap.
-    stride = centre - 0.9 * radius > at ? 0.5 * Math.min(stride, radius) : radius;
+): Promise<{ neighbourhoods: Neighbourhood[]; open: readonly Eigenvalue[]; walked: boolean }> {
+  const scale = setting.shift;
+  const stretches = Array.from({ length: STRETCHES }, (_, k) => ({
+    state,
+    from: (k / STRETCHES) * reach,
+    to: ((k + 1) / STRETCHES) * reach,
+    stride: 0.04 * reach,
+    scale,
+    seed: 1 + k * mostOnStretch,
+  }));
+  const walks = await crew.run("walk", stretches);
+  const neighbourhoods = walks.flatMap(({ discs }) => discs);
+  const isOpen = (suspect: Eigenvalue) => !neighbourhoods.some((area) => covers(area, suspect));
+  const examined = new Set<Eigenvalue>();
+  let seed = STRETCHES * mostOnStretch;
+  while (examined.size < mostSuspects) {
+    // A few at a time: one disc may hold several of them.
+    const next = suspects.filter((suspect) => isOpen(suspect) && !examined.has(suspect)).slice(0, STRETCHES);
+    if (next.length === 0) break;
+    for (const suspect of next) examined.add(suspect);
+    const asked = next.map(({ re, im }) => {
+      seed++;
+      return { state, re, im: im * (1 + 1e-5) + 1e-6 * scale, scale, seed };
+    });
+    neighbourhoods.push(...(await crew.run("neighbourhood", asked)));
   }
-  return true;
+  const walked = walks.every(({ complete }) => complete);
+  return { neighbourhoods, open: suspects.filter(isOpen), walked };
 }
 
 /** Two arrays as a list. */
@@ -168,10 +141,6 @@ export function verdictOf(
     examined,
     open,
   };
-}
-
-function covers(area: Neighbourhood, { re, im }: Eigenvalue): boolean {
-  return Math.hypot(re - area.shiftRe, im - area.shiftIm) < area.radius;
 }
 
 function close(a: Eigenvalue, b: Eigenvalue): boolean {

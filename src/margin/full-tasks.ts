@@ -3,6 +3,7 @@
 import type { FullModel } from "../fullorder/full-model.js";
 import type { ModelState } from "../model/parametric-model.js";
 import { alone, type Crew } from "../parallel/crew.js";
+import { type AxisWalk, type Stretch, walkAxis } from "./axis-walk.js";
 import { type ChannelGain, channelGain } from "./channel-gain.js";
 import { type Neighbourhood, nearbyEigenvalues } from "./nearby-eigenvalues.js";
 
@@ -19,9 +20,14 @@ export interface NeighbourhoodInput extends ShiftInput {
   readonly seed: number;
 }
 
+export interface WalkInput extends Stretch {
+  readonly state: ModelState;
+}
+
 export interface FullTasks extends Record<string, (full: FullModel, input: never) => unknown> {
   readonly gain: (full: FullModel, input: ShiftInput) => ChannelGain;
   readonly neighbourhood: (full: FullModel, input: NeighbourhoodInput) => Neighbourhood;
+  readonly walk: (full: FullModel, input: WalkInput) => AxisWalk;
 }
 
 export const fullTasks: FullTasks = {
@@ -33,6 +39,7 @@ export const fullTasks: FullTasks = {
     const pencil = full.pencilAt(state);
     return nearbyEigenvalues(pencil, pencil.factor(re, im), scale, seed);
   },
+  walk: (full, input) => walkAxis(full.pencilAt(input.state), input),
 };
 
 /** Whoever answers them. */

@@ -81,7 +81,8 @@ export async function marginAt(
   for (let restart = 0; ; restart++) {
     const here = { ...setting, peaks: { ...setting.peaks, extra: hints } };
     const settled = settle(adaptive, measure, states, here, options);
-    const stability = judgeStability(
+    const stability = await judgeStability(
+      crew,
       adaptive,
       states(1),
       here,

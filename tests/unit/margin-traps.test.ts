@@ -8,6 +8,7 @@ import { FullModel } from "../../src/fullorder/full-model.js";
 import { channelGain } from "../../src/margin/channel-gain.js";
 import { decay } from "../../src/margin/decay.js";
 import { judgeStability } from "../../src/margin/full-stability.js";
+import { fullCrewOf } from "../../src/margin/full-tasks.js";
 import type { Measure, Setting } from "../../src/margin/measure.js";
 import { missedPeaks } from "../../src/margin/missed-peaks.js";
 import { multiplier } from "../../src/margin/multiplier.js";
@@ -132,9 +133,9 @@ describe("trap 1: a one-sided projection and stability", () => {
     const state = stateAt(adaptive.full.model, posed.problem.constants);
     const reduced = decay("rate").estimate(() => adaptive.reducedAt(state), setting).eigenvalues;
     expect(Math.max(...reduced.re)).toBeLessThan(0);
-    const verdict = judgeStability(adaptive, state, setting, reduced);
+    const verdict = await judgeStability(fullCrewOf(adaptive.full), adaptive, state, setting, reduced);
     expect(verdict.missed).toHaveLength(1);
-    // Guard: `walkAxis` in full-stability.ts (no suspect of the reduced model is near), `news` in point-margin.ts.
+    // Guard: `walkAxis` in axis-walk.ts (no suspect of the reduced model is near), `news` in point-margin.ts.
     const point = await ask(posed, radius);
     expect(point.stability.unstable).toBe(2);
     expect(point.value).toBeLessThan(0);
