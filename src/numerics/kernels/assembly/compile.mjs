@@ -5,6 +5,7 @@
 
 import { execFileSync } from "node:child_process";
 import {
+  copyFileSync,
   existsSync,
   mkdirSync,
   mkdtempSync,
@@ -29,10 +30,14 @@ function run(script, args) {
   execFileSync(process.execPath, [script, ...args], { stdio: ["ignore", "ignore", "inherit"] });
 }
 
-function compile(output, features) {
+/** Compiles a copy of the sources whose lanes are of this type. */
+function compile(output, lane, features) {
+  const copy = mkdtempSync(join(dirname(output), "sources-"));
+  for (const name of readdirSync(sources)) copyFileSync(join(sources, name), join(copy, name));
+  writeFileSync(join(copy, "lane.ts"), `export type Lane = ${lane};\n`);
   // Warning 112 is about vectors as arguments across the border, where none appears.
   const options = "-O3 --runtime stub --importMemory --maximumMemory 65536 --noAssert --disableWarning 112";
-  run(compiler, [join(sources, "index.ts"), "-o", output, ...features, ...options.split(" ")]);
+  run(compiler, [join(copy, "index.ts"), "-o", output, ...features, ...options.split(" ")]);
 }
 
 /** The translator writes a module around the function that takes the imports; only the function is wanted. */
@@ -53,12 +58,15 @@ if (!outputs.every((name) => isCurrent(join(target, name)))) {
   mkdirSync(target, { recursive: true });
   // Written aside and renamed: several test runs may compile at the same time.
   const aside = mkdtempSync(join(target, "compiling-"));
-  const [fma, simd, plain] = outputs.map((name) => join(aside, name));
-  const scalar = join(aside, "kernels.scalar.wasm");
-  compile(fma, ["--enable", "simd", "--enable", "relaxed-simd"]);
-  compile(simd, ["--enable", "simd"]);
-  compile(scalar, ["--disable", "simd"]);
-  translate(scalar, plain);
-  for (const name of outputs) renameSync(join(aside, name), join(target, name));
-  rmSync(aside, { recursive: true });
+  try {
+    const [fma, simd, plain] = outputs.map((name) => join(aside, name));
+    const scalar = join(aside, "kernels.scalar.wasm");
+    compile(fma, "v128", ["--enable", "simd", "--enable", "relaxed-simd"]);
+    compile(simd, "v128", ["--enable", "simd"]);
+    compile(scalar, "f64", ["--disable", "simd"]);
+    translate(scalar, plain);
+    for (const name of outputs) renameSync(join(aside, name), join(target, name));
+  } finally {
+    rmSync(aside, { recursive: true });
+  }
 }

@@ -6,8 +6,9 @@
  * 2003 (replacing tiny pivots).
  */
 
-import { solveComplexUnitLower } from "./complex-triangles";
+import { solveComplexUnitLower, subtractOne } from "./complex-triangles";
 import { subtractLargeComplexProduct } from "./host";
+import { Lane } from "./lane";
 import { larger, largestLane, multiply, multiplyAdd, multiplySubtract, splat, widthOf, zero } from "./lanes";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
@@ -41,7 +42,7 @@ let closed: bool = false;
  *
  * @returns The number of pivots.
  */
-export function eliminateComplex<V>(
+export function eliminateComplex(
   frontRe: usize,
   frontIm: usize,
   frontOrder: i32,
@@ -71,8 +72,8 @@ export function eliminateComplex<V>(
       advanced = false;
     }
     const end = min(done + PANEL, candidatesEnd);
-    const pivoted = eliminatePanel<V>(done, end);
-    bringUpToDate<V>(done, pivoted, end, order);
+    const pivoted = eliminatePanel(done, end);
+    bringUpToDate(done, pivoted, end, order);
     const active = rejectedFrom;
     moveBehind(active, end, candidatesEnd);
     candidatesEnd -= end - active;
@@ -83,14 +84,14 @@ export function eliminateComplex<V>(
 }
 
 /** Eliminates what it can of the columns [begin, end), block by block; `rejectedFrom` tells which are left. */
-function eliminatePanel<V>(begin: i32, end: i32): i32 {
+function eliminatePanel(begin: i32, end: i32): i32 {
   let k = begin;
   let active = end;
   closed = false;
   while (k < active && !closed) {
     const blockEnd = min(k + BLOCK, active);
-    const pivoted = eliminateBlock<V>(k, blockEnd, begin);
-    bringUpToDate<V>(k, pivoted, blockEnd, end);
+    const pivoted = eliminateBlock(k, blockEnd, begin);
+    bringUpToDate(k, pivoted, blockEnd, end);
     moveBehind(rejectedFrom, blockEnd, active);
     active -= blockEnd - rejectedFrom;
     k = pivoted;
@@ -100,11 +101,11 @@ function eliminatePanel<V>(begin: i32, end: i32): i32 {
 }
 
 /** Eliminates what it can of the columns [begin, end), which alone are kept up to date; rejected ones end up last. */
-function eliminateBlock<V>(begin: i32, end: i32, panelBegin: i32): i32 {
+function eliminateBlock(begin: i32, end: i32, panelBegin: i32): i32 {
   let k = begin;
   rejectedFrom = end;
   while (k < rejectedFrom) {
-    const row = choosePivotRow<V>(k, k === panelBegin);
+    const row = choosePivotRow(k, k === panelBegin);
     if (row === CLOSE_PANEL) {
       closed = true;
       // What stays in the block is taken up again by the next panel.
@@ -117,16 +118,16 @@ function eliminateBlock<V>(begin: i32, end: i32, panelBegin: i32): i32 {
       continue;
     }
     swapRows(k, row);
-    eliminateColumn<V>(k, end);
+    eliminateColumn(k, end);
     k++;
   }
   return k;
 }
 
 /** Row of the pivot for column k, or a refusal. `current` tells that the whole row k is up to date. */
-function choosePivotRow<V>(k: i32, current: bool): i32 {
+function choosePivotRow(k: i32, current: bool): i32 {
   const column = (<usize>(k * order)) << 3;
-  const largest = largestSquare<V>(re + column, im + column, k, order);
+  const largest = largestSquare(re + column, im + column, k, order);
   if (largest <= tiny * tiny) {
     if (forced) return perturb(k, largestRow(column, k));
     if (!current) return CLOSE_PANEL;
@@ -145,17 +146,17 @@ function squareAt(at: usize): f64 {
 }
 
 /** Largest squared modulus of the rows [from, to) of a column; NaN is passed over. */
-function largestSquare<V>(columnRe: usize, columnIm: usize, from: i32, to: i32): f64 {
-  const width = widthOf<V>();
-  let best = zero<V>();
+function largestSquare(columnRe: usize, columnIm: usize, from: i32, to: i32): f64 {
+  const width = widthOf();
+  let best = zero();
   let i = from;
   for (; i + width <= to; i += width) {
     const at = (<usize>i) << 3;
-    const x = load<V>(columnRe + at);
-    const y = load<V>(columnIm + at);
-    best = larger<V>(best, multiplyAdd<V>(y, y, multiply<V>(x, x)));
+    const x = load<Lane>(columnRe + at);
+    const y = load<Lane>(columnIm + at);
+    best = larger(best, multiplyAdd(y, y, multiply(x, x)));
   }
-  let result = largestLane<V>(best);
+  let result = largestLane(best);
   for (; i < to; i++) {
     const at = (<usize>i) << 3;
     const x = load<f64>(columnRe + at);
@@ -237,33 +238,39 @@ function moveBehind(from: i32, end: i32, last: i32): void {
 }
 
 /** Divides column k by its pivot and subtracts it from the columns up to `end`. */
-function eliminateColumn<V>(k: i32, end: i32): void {
+function eliminateColumn(k: i32, end: i32): void {
   const column = (<usize>(k * order)) << 3;
-  scaleColumn<V>(column, k);
+  scaleColumn(column, k);
   let j = k + 1;
-  for (; j + 1 < end; j += 2) subtractFromPair<V>(k, column, (<usize>(j * order)) << 3);
-  if (j < end) subtractFromOne<V>(k, column, (<usize>(j * order)) << 3);
+  for (; j + 1 < end; j += 2) subtractFromPair(k, column, (<usize>(j * order)) << 3);
+  if (j < end) {
+    const target = (<usize>(j * order + k)) << 3;
+    const source = column + ((<usize>(k + 1)) << 3);
+    const br = load<f64>(re + target);
+    const bi = load<f64>(im + target);
+    subtractOne(re + target + 8, im + target + 8, re + source, im + source, br, bi, order - k - 1);
+  }
 }
 
-function scaleColumn<V>(column: usize, k: i32): void {
-  const width = widthOf<V>();
+function scaleColumn(column: usize, k: i32): void {
+  const width = widthOf();
   const pivot = column + ((<usize>k) << 3);
   const pr = load<f64>(re + pivot);
   const pi = load<f64>(im + pivot);
   const d = 1 / (pr * pr + pi * pi);
   const qr = pr * d;
   const qi = -pi * d;
-  const vr = splat<V>(qr);
-  const vi = splat<V>(qi);
+  const vr = splat(qr);
+  const vi = splat(qi);
   const r = re + column;
   const s = im + column;
   let i = k + 1;
   for (; i + width <= order; i += width) {
     const at = (<usize>i) << 3;
-    const x = load<V>(r + at);
-    const y = load<V>(s + at);
-    store<V>(r + at, multiplySubtract<V>(y, vi, multiply<V>(x, vr)));
-    store<V>(s + at, multiplyAdd<V>(y, vr, multiply<V>(x, vi)));
+    const x = load<Lane>(r + at);
+    const y = load<Lane>(s + at);
+    store<Lane>(r + at, multiplySubtract(y, vi, multiply(x, vr)));
+    store<Lane>(s + at, multiplyAdd(y, vr, multiply(x, vi)));
   }
   for (; i < order; i++) {
     const at = (<usize>i) << 3;
@@ -275,18 +282,18 @@ function scaleColumn<V>(column: usize, k: i32): void {
 }
 
 /** The column at `target` and its neighbour, below row k, less the column at `source` times their entries in row k. */
-function subtractFromPair<V>(k: i32, source: usize, target: usize): void {
-  const width = widthOf<V>();
+function subtractFromPair(k: i32, source: usize, target: usize): void {
+  const width = widthOf();
   const step = (<usize>order) << 3;
   const row = (<usize>k) << 3;
   const b0r = load<f64>(re + target + row);
   const b0i = load<f64>(im + target + row);
   const b1r = load<f64>(re + target + step + row);
   const b1i = load<f64>(im + target + step + row);
-  const v0r = splat<V>(b0r);
-  const v0i = splat<V>(b0i);
-  const v1r = splat<V>(b1r);
-  const v1i = splat<V>(b1i);
+  const v0r = splat(b0r);
+  const v0i = splat(b0i);
+  const v1r = splat(b1r);
+  const v1i = splat(b1i);
   const xr = re + source;
   const xi = im + source;
   const yr = re + target;
@@ -296,12 +303,12 @@ function subtractFromPair<V>(k: i32, source: usize, target: usize): void {
   let i = k + 1;
   for (; i + width <= order; i += width) {
     const at = (<usize>i) << 3;
-    const ar = load<V>(xr + at);
-    const ai = load<V>(xi + at);
-    store<V>(yr + at, multiplyAdd<V>(ai, v0i, multiplySubtract<V>(ar, v0r, load<V>(yr + at))));
-    store<V>(yi + at, multiplySubtract<V>(ai, v0r, multiplySubtract<V>(ar, v0i, load<V>(yi + at))));
-    store<V>(zr + at, multiplyAdd<V>(ai, v1i, multiplySubtract<V>(ar, v1r, load<V>(zr + at))));
-    store<V>(zi + at, multiplySubtract<V>(ai, v1r, multiplySubtract<V>(ar, v1i, load<V>(zi + at))));
+    const ar = load<Lane>(xr + at);
+    const ai = load<Lane>(xi + at);
+    store<Lane>(yr + at, multiplyAdd(ai, v0i, multiplySubtract(ar, v0r, load<Lane>(yr + at))));
+    store<Lane>(yi + at, multiplySubtract(ai, v0r, multiplySubtract(ar, v0i, load<Lane>(yi + at))));
+    store<Lane>(zr + at, multiplyAdd(ai, v1i, multiplySubtract(ar, v1r, load<Lane>(zr + at))));
+    store<Lane>(zi + at, multiplySubtract(ai, v1r, multiplySubtract(ar, v1i, load<Lane>(zi + at))));
   }
   for (; i < order; i++) {
     const at = (<usize>i) << 3;
@@ -314,44 +321,16 @@ function subtractFromPair<V>(k: i32, source: usize, target: usize): void {
   }
 }
 
-function subtractFromOne<V>(k: i32, source: usize, target: usize): void {
-  const width = widthOf<V>();
-  const row = (<usize>k) << 3;
-  const br = load<f64>(re + target + row);
-  const bi = load<f64>(im + target + row);
-  const vr = splat<V>(br);
-  const vi = splat<V>(bi);
-  const xr = re + source;
-  const xi = im + source;
-  const yr = re + target;
-  const yi = im + target;
-  let i = k + 1;
-  for (; i + width <= order; i += width) {
-    const at = (<usize>i) << 3;
-    const ar = load<V>(xr + at);
-    const ai = load<V>(xi + at);
-    store<V>(yr + at, multiplyAdd<V>(ai, vi, multiplySubtract<V>(ar, vr, load<V>(yr + at))));
-    store<V>(yi + at, multiplySubtract<V>(ai, vr, multiplySubtract<V>(ar, vi, load<V>(yi + at))));
-  }
-  for (; i < order; i++) {
-    const at = (<usize>i) << 3;
-    const ar = load<f64>(xr + at);
-    const ai = load<f64>(xi + at);
-    store<f64>(yr + at, load<f64>(yr + at) - (ar * br - ai * bi));
-    store<f64>(yi + at, load<f64>(yi + at) - (ar * bi + ai * br));
-  }
-}
-
 /** Brings the columns [from, to) up to date with the pivots [begin, pivoted). */
-function bringUpToDate<V>(begin: i32, pivoted: i32, from: i32, to: i32): void {
+function bringUpToDate(begin: i32, pivoted: i32, from: i32, to: i32): void {
   const k = pivoted - begin;
   const columns = to - from;
   if (k === 0 || columns <= 0) return;
   const lower = (<usize>(begin + begin * order)) << 3;
   const right = (<usize>(begin + from * order)) << 3;
-  solveComplexUnitLower<V>(re + lower, im + lower, order, re + right, im + right, order, columns, k);
+  solveComplexUnitLower(re + lower, im + lower, order, re + right, im + right, order, columns, k);
   const rows = (<usize>k) << 3;
-  subtractLargeComplexProduct<V>(
+  subtractLargeComplexProduct(
     re + right + rows,
     im + right + rows,
     order,

@@ -13,6 +13,7 @@
  * Source: Higham, SIAM J. Matrix Anal. Appl. 13(3), 1992 (three products); the scaling is ours.
  */
 
+import { Lane } from "./lane";
 import {
   larger,
   largestLane,
@@ -42,7 +43,7 @@ import {
 import { multiplyTile, packLeft, packLeftTransposed, packRight, subtractTile } from "./tiles";
 
 /** op(A) = A (m×k at `a`), or Aᴴ when `adjoint` (then A is k×m); B is k×n, C m×n and overlaps neither. */
-export function subtractComplexProduct<V>(
+export function subtractComplexProduct(
   cRe: usize,
   cIm: usize,
   cStride: i32,
@@ -64,22 +65,22 @@ export function subtractComplexProduct<V>(
       const right = (<usize>(p0 + j0 * bStride)) << 3;
       packRight(RIGHT, bRe + right, bStride, columns, depth);
       packRight(RIGHT_SECOND, bIm + right, bStride, columns, depth);
-      const t = balance<V>(RIGHT, RIGHT_SECOND, roundUp(columns, TILE_COLUMNS) * depth);
-      addScaled<V>(RIGHT_THIRD, RIGHT, RIGHT_SECOND, t, roundUp(columns, TILE_COLUMNS) * depth);
+      const t = balance(RIGHT, RIGHT_SECOND, roundUp(columns, TILE_COLUMNS) * depth);
+      addScaled(RIGHT_THIRD, RIGHT, RIGHT_SECOND, t, roundUp(columns, TILE_COLUMNS) * depth);
       for (let i0 = 0; i0 < m; i0 += ROWS) {
         const rows = min(ROWS, m - i0);
         const left = (<usize>(adjoint ? p0 + i0 * aStride : i0 + p0 * aStride)) << 3;
         if (adjoint) {
-          packLeftTransposed<V>(LEFT, aRe + left, aStride, rows, depth);
-          packLeftTransposed<V>(LEFT_SECOND, aIm + left, aStride, rows, depth);
+          packLeftTransposed(LEFT, aRe + left, aStride, rows, depth);
+          packLeftTransposed(LEFT_SECOND, aIm + left, aStride, rows, depth);
         } else {
-          packLeft<V>(LEFT, aRe + left, aStride, rows, depth);
-          packLeft<V>(LEFT_SECOND, aIm + left, aStride, rows, depth);
+          packLeft(LEFT, aRe + left, aStride, rows, depth);
+          packLeft(LEFT_SECOND, aIm + left, aStride, rows, depth);
         }
         const sign: f64 = adjoint ? -1 : 1;
-        addScaled<V>(LEFT_THIRD, LEFT, LEFT_SECOND, sign * t, roundUp(rows, 2 * widthOf<V>()) * depth);
+        addScaled(LEFT_THIRD, LEFT, LEFT_SECOND, sign * t, roundUp(rows, 2 * widthOf()) * depth);
         const target = (<usize>(i0 + j0 * cStride)) << 3;
-        subtractPacked<V>(cRe + target, cIm + target, cStride, rows, columns, depth, t, sign);
+        subtractPacked(cRe + target, cIm + target, cStride, rows, columns, depth, t, sign);
       }
     }
   }
@@ -90,16 +91,16 @@ function roundUp(size: i32, unit: i32): i32 {
 }
 
 /** The power of two that makes the largest imaginary part about as large as the largest real one. */
-function balance<V>(re: usize, im: usize, count: i32): f64 {
-  let x = zero<V>();
-  let y = zero<V>();
+function balance(re: usize, im: usize, count: i32): f64 {
+  let x = zero();
+  let y = zero();
   const end = re + ((<usize>count) << 3);
-  for (; re < end; re += sizeof<V>(), im += sizeof<V>()) {
-    x = larger<V>(x, magnitude<V>(load<V>(re)));
-    y = larger<V>(y, magnitude<V>(load<V>(im)));
+  for (; re < end; re += sizeof<Lane>(), im += sizeof<Lane>()) {
+    x = larger(x, magnitude(load<Lane>(re)));
+    y = larger(y, magnitude(load<Lane>(im)));
   }
-  const real = largestLane<V>(x);
-  const imaginary = largestLane<V>(y);
+  const real = largestLane(x);
+  const imaginary = largestLane(y);
   if (!(real > 0) || !(imaginary > 0)) return 1;
   // The exponents of two doubles differ by those of their quotient, give or take one.
   const shift = <i32>(reinterpret<i64>(real) >> 52) - <i32>(reinterpret<i64>(imaginary) >> 52);
@@ -107,15 +108,15 @@ function balance<V>(re: usize, im: usize, count: i32): f64 {
 }
 
 /** to ← x + t y. */
-function addScaled<V>(to: usize, x: usize, y: usize, t: f64, count: i32): void {
-  const v = splat<V>(t);
+function addScaled(to: usize, x: usize, y: usize, t: f64, count: i32): void {
+  const v = splat(t);
   const end = x + ((<usize>count) << 3);
-  for (; x < end; x += sizeof<V>(), y += sizeof<V>(), to += sizeof<V>()) {
-    store<V>(to, multiplyAdd<V>(load<V>(y), v, load<V>(x)));
+  for (; x < end; x += sizeof<Lane>(), y += sizeof<Lane>(), to += sizeof<Lane>()) {
+    store<Lane>(to, multiplyAdd(load<Lane>(y), v, load<Lane>(x)));
   }
 }
 
-function subtractPacked<V>(
+function subtractPacked(
   cRe: usize,
   cIm: usize,
   cStride: i32,
@@ -125,35 +126,35 @@ function subtractPacked<V>(
   t: f64,
   sign: f64,
 ): void {
-  const strip = 2 * widthOf<V>();
+  const strip = 2 * widthOf();
   for (let j = 0; j < columns; j += TILE_COLUMNS) {
     const b = (<usize>(j * depth)) << 3;
     for (let i = 0; i < rows; i += strip) {
       const a = (<usize>(i * depth)) << 3;
-      multiplyTile<V>(TILE, LEFT + a, RIGHT + b, depth);
-      multiplyTile<V>(TILE_SECOND, LEFT_SECOND + a, RIGHT_SECOND + b, depth);
-      multiplyTile<V>(TILE_THIRD, LEFT_THIRD + a, RIGHT_THIRD + b, depth);
-      combineTiles<V>(sign, t);
+      multiplyTile(TILE, LEFT + a, RIGHT + b, depth);
+      multiplyTile(TILE_SECOND, LEFT_SECOND + a, RIGHT_SECOND + b, depth);
+      multiplyTile(TILE_THIRD, LEFT_THIRD + a, RIGHT_THIRD + b, depth);
+      combineTiles(sign, t);
       const at = (<usize>(i + j * cStride)) << 3;
       const tileRows = min(strip, rows - i);
       const tileColumns = min(TILE_COLUMNS, columns - j);
-      subtractTile<V>(cRe + at, TILE_SECOND, cStride, tileRows, tileColumns);
-      subtractTile<V>(cIm + at, TILE_THIRD, cStride, tileRows, tileColumns);
+      subtractTile(cRe + at, TILE_SECOND, cStride, tileRows, tileColumns);
+      subtractTile(cIm + at, TILE_THIRD, cStride, tileRows, tileColumns);
     }
   }
 }
 
 /** Real part into the second tile, imaginary part into the third; `sign` is that of the imaginary parts of op(A). */
-function combineTiles<V>(sign: f64, t: f64): void {
-  const s = splat<V>(sign);
-  const st2 = splat<V>(sign * t * t);
-  const inverse = splat<V>(1 / t);
-  const bytes: usize = 2 * sizeof<V>() * <usize>TILE_COLUMNS;
-  for (let p: usize = 0; p < bytes; p += sizeof<V>()) {
-    const first = load<V>(TILE + p);
-    const second = load<V>(TILE_SECOND + p);
-    const both = subtract<V>(load<V>(TILE_THIRD + p), first);
-    store<V>(TILE_SECOND + p, subtract<V>(first, multiply<V>(s, second)));
-    store<V>(TILE_THIRD + p, multiply<V>(inverse, subtract<V>(both, multiply<V>(st2, second))));
+function combineTiles(sign: f64, t: f64): void {
+  const s = splat(sign);
+  const st2 = splat(sign * t * t);
+  const inverse = splat(1 / t);
+  const bytes: usize = 2 * sizeof<Lane>() * <usize>TILE_COLUMNS;
+  for (let p: usize = 0; p < bytes; p += sizeof<Lane>()) {
+    const first = load<Lane>(TILE + p);
+    const second = load<Lane>(TILE_SECOND + p);
+    const both = subtract(load<Lane>(TILE_THIRD + p), first);
+    store<Lane>(TILE_SECOND + p, subtract(first, multiply(s, second)));
+    store<Lane>(TILE_THIRD + p, multiply(inverse, subtract(both, multiply(st2, second))));
   }
 }

@@ -4,6 +4,7 @@
  */
 
 import { subtractComplexProduct } from "./complex-product";
+import { Lane } from "./lane";
 import { multiplyAdd, multiplySubtract, splat, sumOfLanes, widthOf, zero } from "./lanes";
 
 /** Triangles up to this size are solved directly, larger ones in blocks. */
@@ -12,7 +13,7 @@ const BLOCK: i32 = 8;
 const PACKED_FROM: i32 = 4;
 
 /** y ← y − op(A) x: thin or packed, as the number n of columns asks for; op(A) is m×k. */
-export function subtractComplex<V>(
+export function subtractComplex(
   yRe: usize,
   yIm: usize,
   yStride: i32,
@@ -28,19 +29,19 @@ export function subtractComplex<V>(
   adjoint: bool,
 ): void {
   if (n >= PACKED_FROM) {
-    subtractComplexProduct<V>(yRe, yIm, yStride, aRe, aIm, aStride, xRe, xIm, xStride, m, n, k, adjoint);
+    subtractComplexProduct(yRe, yIm, yStride, aRe, aIm, aStride, xRe, xIm, xStride, m, n, k, adjoint);
     return;
   }
   for (let c = 0; c < n; c++) {
     const y = (<usize>(c * yStride)) << 3;
     const x = (<usize>(c * xStride)) << 3;
-    if (adjoint) subtractAdjointColumn<V>(yRe + y, yIm + y, aRe, aIm, aStride, xRe + x, xIm + x, m, k);
-    else subtractColumn<V>(yRe + y, yIm + y, aRe, aIm, aStride, xRe + x, xIm + x, m, k);
+    if (adjoint) subtractAdjointColumn(yRe + y, yIm + y, aRe, aIm, aStride, xRe + x, xIm + x, m, k);
+    else subtractColumn(yRe + y, yIm + y, aRe, aIm, aStride, xRe + x, xIm + x, m, k);
   }
 }
 
 /** y ← y − A x for one column, two columns of A at a time. */
-function subtractColumn<V>(
+function subtractColumn(
   yRe: usize,
   yIm: usize,
   aRe: usize,
@@ -56,7 +57,7 @@ function subtractColumn<V>(
   for (; p + 1 < k; p += 2) {
     const at = (<usize>p) << 3;
     const column = (<usize>(p * aStride)) << 3;
-    subtractTwo<V>(
+    subtractTwo(
       yRe,
       yIm,
       aRe + column,
@@ -74,11 +75,11 @@ function subtractColumn<V>(
     const column = (<usize>(p * aStride)) << 3;
     const xr = load<f64>(xRe + at);
     const xi = load<f64>(xIm + at);
-    subtractOne<V>(yRe, yIm, aRe + column, aIm + column, xr, xi, m);
+    subtractOne(yRe, yIm, aRe + column, aIm + column, xr, xi, m);
   }
 }
 
-function subtractTwo<V>(
+function subtractTwo(
   yRe: usize,
   yIm: usize,
   aRe: usize,
@@ -90,26 +91,26 @@ function subtractTwo<V>(
   x1i: f64,
   m: i32,
 ): void {
-  const width = widthOf<V>();
-  const v0r = splat<V>(x0r);
-  const v0i = splat<V>(x0i);
-  const v1r = splat<V>(x1r);
-  const v1i = splat<V>(x1i);
+  const width = widthOf();
+  const v0r = splat(x0r);
+  const v0i = splat(x0i);
+  const v1r = splat(x1r);
+  const v1i = splat(x1i);
   const bRe = aRe + step;
   const bIm = aIm + step;
   let i = 0;
   for (; i + width <= m; i += width) {
     const at = (<usize>i) << 3;
-    const ar = load<V>(aRe + at);
-    const ai = load<V>(aIm + at);
-    const br = load<V>(bRe + at);
-    const bi = load<V>(bIm + at);
-    let r = multiplyAdd<V>(ai, v0i, multiplySubtract<V>(ar, v0r, load<V>(yRe + at)));
-    let s = multiplySubtract<V>(ai, v0r, multiplySubtract<V>(ar, v0i, load<V>(yIm + at)));
-    r = multiplyAdd<V>(bi, v1i, multiplySubtract<V>(br, v1r, r));
-    s = multiplySubtract<V>(bi, v1r, multiplySubtract<V>(br, v1i, s));
-    store<V>(yRe + at, r);
-    store<V>(yIm + at, s);
+    const ar = load<Lane>(aRe + at);
+    const ai = load<Lane>(aIm + at);
+    const br = load<Lane>(bRe + at);
+    const bi = load<Lane>(bIm + at);
+    let r = multiplyAdd(ai, v0i, multiplySubtract(ar, v0r, load<Lane>(yRe + at)));
+    let s = multiplySubtract(ai, v0r, multiplySubtract(ar, v0i, load<Lane>(yIm + at)));
+    r = multiplyAdd(bi, v1i, multiplySubtract(br, v1r, r));
+    s = multiplySubtract(bi, v1r, multiplySubtract(br, v1i, s));
+    store<Lane>(yRe + at, r);
+    store<Lane>(yIm + at, s);
   }
   for (; i < m; i++) {
     const at = (<usize>i) << 3;
@@ -123,17 +124,17 @@ function subtractTwo<V>(
 }
 
 /** y ← y − a x for a column a and a number x. */
-function subtractOne<V>(yRe: usize, yIm: usize, aRe: usize, aIm: usize, xr: f64, xi: f64, m: i32): void {
-  const width = widthOf<V>();
-  const vr = splat<V>(xr);
-  const vi = splat<V>(xi);
+export function subtractOne(yRe: usize, yIm: usize, aRe: usize, aIm: usize, xr: f64, xi: f64, m: i32): void {
+  const width = widthOf();
+  const vr = splat(xr);
+  const vi = splat(xi);
   let i = 0;
   for (; i + width <= m; i += width) {
     const at = (<usize>i) << 3;
-    const ar = load<V>(aRe + at);
-    const ai = load<V>(aIm + at);
-    store<V>(yRe + at, multiplyAdd<V>(ai, vi, multiplySubtract<V>(ar, vr, load<V>(yRe + at))));
-    store<V>(yIm + at, multiplySubtract<V>(ai, vr, multiplySubtract<V>(ar, vi, load<V>(yIm + at))));
+    const ar = load<Lane>(aRe + at);
+    const ai = load<Lane>(aIm + at);
+    store<Lane>(yRe + at, multiplyAdd(ai, vi, multiplySubtract(ar, vr, load<Lane>(yRe + at))));
+    store<Lane>(yIm + at, multiplySubtract(ai, vr, multiplySubtract(ar, vi, load<Lane>(yIm + at))));
   }
   for (; i < m; i++) {
     const at = (<usize>i) << 3;
@@ -145,7 +146,7 @@ function subtractOne<V>(yRe: usize, yIm: usize, aRe: usize, aIm: usize, xr: f64,
 }
 
 /** y ← y − Aᴴ x for one column; A is k×m. */
-function subtractAdjointColumn<V>(
+function subtractAdjointColumn(
   yRe: usize,
   yIm: usize,
   aRe: usize,
@@ -156,28 +157,28 @@ function subtractAdjointColumn<V>(
   m: i32,
   k: i32,
 ): void {
-  const width = widthOf<V>();
+  const width = widthOf();
   const step = (<usize>aStride) << 3;
   for (let i: usize = 0; i < (<usize>m) << 3; i += 8) {
     // Four sums, so that none waits for another.
-    let rr = zero<V>();
-    let ii = zero<V>();
-    let ri = zero<V>();
-    let ir = zero<V>();
+    let rr = zero();
+    let ii = zero();
+    let ri = zero();
+    let ir = zero();
     let p = 0;
     for (; p + width <= k; p += width) {
       const at = (<usize>p) << 3;
-      const ar = load<V>(aRe + at);
-      const ai = load<V>(aIm + at);
-      const xr = load<V>(xRe + at);
-      const xi = load<V>(xIm + at);
-      rr = multiplyAdd<V>(ar, xr, rr);
-      ii = multiplyAdd<V>(ai, xi, ii);
-      ri = multiplyAdd<V>(ar, xi, ri);
-      ir = multiplyAdd<V>(ai, xr, ir);
+      const ar = load<Lane>(aRe + at);
+      const ai = load<Lane>(aIm + at);
+      const xr = load<Lane>(xRe + at);
+      const xi = load<Lane>(xIm + at);
+      rr = multiplyAdd(ar, xr, rr);
+      ii = multiplyAdd(ai, xi, ii);
+      ri = multiplyAdd(ar, xi, ri);
+      ir = multiplyAdd(ai, xr, ir);
     }
-    let sumRe = sumOfLanes<V>(rr) + sumOfLanes<V>(ii);
-    let sumIm = sumOfLanes<V>(ri) - sumOfLanes<V>(ir);
+    let sumRe = sumOfLanes(rr) + sumOfLanes(ii);
+    let sumIm = sumOfLanes(ri) - sumOfLanes(ir);
     for (; p < k; p++) {
       const at = (<usize>p) << 3;
       const ar = load<f64>(aRe + at);
@@ -195,7 +196,7 @@ function subtractAdjointColumn<V>(
 }
 
 /** X ← L⁻¹ X with L k×k unit lower triangular, X k×n. */
-export function solveComplexUnitLower<V>(
+export function solveComplexUnitLower(
   lRe: usize,
   lIm: usize,
   lStride: i32,
@@ -216,11 +217,11 @@ export function solveComplexUnitLower<V>(
         const below = diagonal + ((<usize>(p * (lStride + 1) + 1)) << 3);
         const xr = load<f64>(xRe + at);
         const xi = load<f64>(xIm + at);
-        subtractOne<V>(xRe + at + 8, xIm + at + 8, lRe + below, lIm + below, xr, xi, size - p - 1);
+        subtractOne(xRe + at + 8, xIm + at + 8, lRe + below, lIm + below, xr, xi, size - p - 1);
       }
     }
     const next = (<usize>size) << 3;
-    subtractComplex<V>(
+    subtractComplex(
       xRe + rows + next,
       xIm + rows + next,
       xStride,
@@ -239,7 +240,7 @@ export function solveComplexUnitLower<V>(
 }
 
 /** X ← L⁻ᴴ X with L k×k unit lower triangular, X k×n. */
-export function solveComplexUnitLowerAdjoint<V>(
+export function solveComplexUnitLowerAdjoint(
   lRe: usize,
   lIm: usize,
   lStride: i32,
@@ -254,7 +255,7 @@ export function solveComplexUnitLowerAdjoint<V>(
     for (let p = k - 2; p >= 0; p--) {
       const at = x + ((<usize>p) << 3);
       const below = (<usize>(p * (lStride + 1) + 1)) << 3;
-      subtractAdjointColumn<V>(
+      subtractAdjointColumn(
         xRe + at,
         xIm + at,
         lRe + below,
@@ -270,7 +271,7 @@ export function solveComplexUnitLowerAdjoint<V>(
 }
 
 /** X ← U⁻¹ X with U k×k upper triangular, X k×n. */
-export function solveComplexUpper<V>(
+export function solveComplexUpper(
   uRe: usize,
   uIm: usize,
   uStride: i32,
@@ -295,13 +296,13 @@ export function solveComplexUpper<V>(
       const xi = (bi * dr - br * di) * d;
       store<f64>(xRe + at, xr);
       store<f64>(xIm + at, xi);
-      subtractOne<V>(xRe + x, xIm + x, uRe + column, uIm + column, xr, xi, p);
+      subtractOne(xRe + x, xIm + x, uRe + column, uIm + column, xr, xi, p);
     }
   }
 }
 
 /** X ← U⁻ᴴ X with U k×k upper triangular, X k×n. */
-export function solveComplexUpperAdjoint<V>(
+export function solveComplexUpperAdjoint(
   uRe: usize,
   uIm: usize,
   uStride: i32,
@@ -320,7 +321,7 @@ export function solveComplexUpperAdjoint<V>(
     for (let c = 0; c < n; c++) {
       const x = (<usize>(c * xStride)) << 3;
       const at = x + ((<usize>p) << 3);
-      subtractAdjointColumn<V>(xRe + at, xIm + at, uRe + column, uIm + column, 0, xRe + x, xIm + x, 1, p);
+      subtractAdjointColumn(xRe + at, xIm + at, uRe + column, uIm + column, 0, xRe + x, xIm + x, 1, p);
       const br = load<f64>(xRe + at);
       const bi = load<f64>(xIm + at);
       // Division by the conjugate of the pivot.

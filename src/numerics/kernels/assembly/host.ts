@@ -42,7 +42,7 @@ function goesOutside(m: i32, n: i32): bool {
   return outsideFrom > 0 && m >= outsideFrom && n >= outsideFrom;
 }
 
-export function subtractLargeComplexProduct<V>(
+export function subtractLargeComplexProduct(
   cRe: usize,
   cIm: usize,
   cStride: i32,
@@ -59,11 +59,11 @@ export function subtractLargeComplexProduct<V>(
   if (goesOutside(m, n)) {
     complexProductOutside(cRe, cIm, cStride, aRe, aIm, aStride, bRe, bIm, bStride, m, n, k);
   } else {
-    subtractComplexProduct<V>(cRe, cIm, cStride, aRe, aIm, aStride, bRe, bIm, bStride, m, n, k, false);
+    subtractComplexProduct(cRe, cIm, cStride, aRe, aIm, aStride, bRe, bIm, bStride, m, n, k, false);
   }
 }
 
-export function subtractLargeRealProduct<V>(
+export function subtractLargeRealProduct(
   c: usize,
   cStride: i32,
   a: usize,
@@ -75,5 +75,5 @@ export function subtractLargeRealProduct<V>(
   k: i32,
 ): void {
   if (goesOutside(m, n)) realProductOutside(c, cStride, a, aStride, b, bStride, m, n, k);
-  else subtractRealProduct<V>(c, cStride, a, aStride, b, bStride, m, n, k, false);
+  else subtractRealProduct(c, cStride, a, aStride, b, bStride, m, n, k, false);
 }

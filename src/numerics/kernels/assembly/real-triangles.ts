@@ -3,6 +3,7 @@
  * column-major blocks. Addresses are bytes, strides and sizes doubles.
  */
 
+import { Lane } from "./lane";
 import { multiplyAdd, multiplySubtract, splat, sumOfLanes, widthOf, zero } from "./lanes";
 import { subtractRealProduct } from "./real-product";
 
@@ -12,7 +13,7 @@ const BLOCK: i32 = 8;
 const PACKED_FROM: i32 = 4;
 
 /** y ← y − op(A) x: thin or packed, as the number n of columns asks for; op(A) is m×k. */
-export function subtractReal<V>(
+export function subtractReal(
   y: usize,
   yStride: i32,
   a: usize,
@@ -25,53 +26,53 @@ export function subtractReal<V>(
   transposed: bool,
 ): void {
   if (n >= PACKED_FROM) {
-    subtractRealProduct<V>(y, yStride, a, aStride, x, xStride, m, n, k, transposed);
+    subtractRealProduct(y, yStride, a, aStride, x, xStride, m, n, k, transposed);
     return;
   }
   for (let c = 0; c < n; c++) {
     const yc = y + ((<usize>(c * yStride)) << 3);
     const xc = x + ((<usize>(c * xStride)) << 3);
-    if (transposed) subtractTransposedColumn<V>(yc, a, aStride, xc, m, k);
-    else subtractColumn<V>(yc, a, aStride, xc, m, k);
+    if (transposed) subtractTransposedColumn(yc, a, aStride, xc, m, k);
+    else subtractColumn(yc, a, aStride, xc, m, k);
   }
 }
 
 /** y ← y − A x for one column, four columns of A at a time. */
-function subtractColumn<V>(y: usize, a: usize, aStride: i32, x: usize, m: i32, k: i32): void {
+function subtractColumn(y: usize, a: usize, aStride: i32, x: usize, m: i32, k: i32): void {
   const step = (<usize>aStride) << 3;
   let p = 0;
   for (; p + 3 < k; p += 4) {
-    subtractFour<V>(y, a, step, x, m);
+    subtractFour(y, a, step, x, m);
     a += 4 * step;
     x += 32;
   }
   for (; p < k; p++) {
-    subtractOne<V>(y, a, load<f64>(x), m);
+    subtractOne(y, a, load<f64>(x), m);
     a += step;
     x += 8;
   }
 }
 
-function subtractFour<V>(y: usize, a: usize, step: usize, x: usize, m: i32): void {
-  const width = widthOf<V>();
+function subtractFour(y: usize, a: usize, step: usize, x: usize, m: i32): void {
+  const width = widthOf();
   const x0 = load<f64>(x);
   const x1 = load<f64>(x, 8);
   const x2 = load<f64>(x, 16);
   const x3 = load<f64>(x, 24);
-  const v0 = splat<V>(x0);
-  const v1 = splat<V>(x1);
-  const v2 = splat<V>(x2);
-  const v3 = splat<V>(x3);
+  const v0 = splat(x0);
+  const v1 = splat(x1);
+  const v2 = splat(x2);
+  const v3 = splat(x3);
   const b = a + step;
   const c = b + step;
   const d = c + step;
   let i = 0;
   for (; i + width <= m; i += width) {
     const at = (<usize>i) << 3;
-    let sum = multiplySubtract<V>(load<V>(a + at), v0, load<V>(y + at));
-    sum = multiplySubtract<V>(load<V>(b + at), v1, sum);
-    sum = multiplySubtract<V>(load<V>(c + at), v2, sum);
-    store<V>(y + at, multiplySubtract<V>(load<V>(d + at), v3, sum));
+    let sum = multiplySubtract(load<Lane>(a + at), v0, load<Lane>(y + at));
+    sum = multiplySubtract(load<Lane>(b + at), v1, sum);
+    sum = multiplySubtract(load<Lane>(c + at), v2, sum);
+    store<Lane>(y + at, multiplySubtract(load<Lane>(d + at), v3, sum));
   }
   for (; i < m; i++) {
     const at = (<usize>i) << 3;
@@ -82,13 +83,13 @@ function subtractFour<V>(y: usize, a: usize, step: usize, x: usize, m: i32): voi
 }
 
 /** y ← y − a x for a column a and a number x. */
-export function subtractOne<V>(y: usize, a: usize, x: f64, m: i32): void {
-  const width = widthOf<V>();
-  const v = splat<V>(x);
+export function subtractOne(y: usize, a: usize, x: f64, m: i32): void {
+  const width = widthOf();
+  const v = splat(x);
   let i = 0;
   for (; i + width <= m; i += width) {
     const at = (<usize>i) << 3;
-    store<V>(y + at, multiplySubtract<V>(load<V>(a + at), v, load<V>(y + at)));
+    store<Lane>(y + at, multiplySubtract(load<Lane>(a + at), v, load<Lane>(y + at)));
   }
   for (; i < m; i++) {
     const at = (<usize>i) << 3;
@@ -97,20 +98,20 @@ export function subtractOne<V>(y: usize, a: usize, x: f64, m: i32): void {
 }
 
 /** y ← y − Aᵀ x for one column; A is k×m. */
-function subtractTransposedColumn<V>(y: usize, a: usize, aStride: i32, x: usize, m: i32, k: i32): void {
-  const width = widthOf<V>();
+function subtractTransposedColumn(y: usize, a: usize, aStride: i32, x: usize, m: i32, k: i32): void {
+  const width = widthOf();
   const step = (<usize>aStride) << 3;
   for (let i = 0; i < m; i++) {
     // Two sums, so that neither waits for the other.
-    let even = zero<V>();
-    let odd = zero<V>();
+    let even = zero();
+    let odd = zero();
     let p = 0;
     for (; p + 2 * width <= k; p += 2 * width) {
       const at = (<usize>p) << 3;
-      even = multiplyAdd<V>(load<V>(a + at), load<V>(x + at), even);
-      odd = multiplyAdd<V>(load<V>(a + at + sizeof<V>()), load<V>(x + at + sizeof<V>()), odd);
+      even = multiplyAdd(load<Lane>(a + at), load<Lane>(x + at), even);
+      odd = multiplyAdd(load<Lane>(a + at + sizeof<Lane>()), load<Lane>(x + at + sizeof<Lane>()), odd);
     }
-    let sum = sumOfLanes<V>(even) + sumOfLanes<V>(odd);
+    let sum = sumOfLanes(even) + sumOfLanes(odd);
     for (; p < k; p++) {
       const at = (<usize>p) << 3;
       sum += load<f64>(a + at) * load<f64>(x + at);
@@ -122,7 +123,7 @@ function subtractTransposedColumn<V>(y: usize, a: usize, aStride: i32, x: usize,
 }
 
 /** X ← L⁻¹ X with L k×k unit lower triangular, X k×n. */
-export function solveRealUnitLower<V>(l: usize, lStride: i32, x: usize, xStride: i32, n: i32, k: i32): void {
+export function solveRealUnitLower(l: usize, lStride: i32, x: usize, xStride: i32, n: i32, k: i32): void {
   for (let begin = 0; begin < k; begin += BLOCK) {
     const size = min(BLOCK, k - begin);
     const diagonal = l + ((<usize>(begin * (lStride + 1))) << 3);
@@ -131,16 +132,11 @@ export function solveRealUnitLower<V>(l: usize, lStride: i32, x: usize, xStride:
       const column = rows + ((<usize>(c * xStride)) << 3);
       for (let p = 0; p + 1 < size; p++) {
         const at = column + ((<usize>p) << 3);
-        subtractOne<V>(
-          at + 8,
-          diagonal + ((<usize>(p * (lStride + 1) + 1)) << 3),
-          load<f64>(at),
-          size - p - 1,
-        );
+        subtractOne(at + 8, diagonal + ((<usize>(p * (lStride + 1) + 1)) << 3), load<f64>(at), size - p - 1);
       }
     }
     const next = (<usize>size) << 3;
-    subtractReal<V>(
+    subtractReal(
       rows + next,
       xStride,
       diagonal + next,
@@ -156,7 +152,7 @@ export function solveRealUnitLower<V>(l: usize, lStride: i32, x: usize, xStride:
 }
 
 /** X ← L⁻ᵀ X with L k×k unit lower triangular, X k×n. */
-export function solveRealUnitLowerTransposed<V>(
+export function solveRealUnitLowerTransposed(
   l: usize,
   lStride: i32,
   x: usize,
@@ -168,7 +164,7 @@ export function solveRealUnitLowerTransposed<V>(
     const column = x + ((<usize>(c * xStride)) << 3);
     for (let p = k - 2; p >= 0; p--) {
       const at = column + ((<usize>p) << 3);
-      subtractTransposedColumn<V>(at, l + ((<usize>(p * (lStride + 1) + 1)) << 3), 0, at + 8, 1, k - p - 1);
+      subtractTransposedColumn(at, l + ((<usize>(p * (lStride + 1) + 1)) << 3), 0, at + 8, 1, k - p - 1);
     }
   }
 }

@@ -8,6 +8,7 @@
  */
 
 import { subtractLargeRealProduct } from "./host";
+import { Lane } from "./lane";
 import { larger, largestLane, magnitude, widthOf, zero } from "./lanes";
 import { subtractOne } from "./real-triangles";
 
@@ -63,7 +64,7 @@ function at(row: i32, column: i32): usize {
  *
  * @returns The number of pivots.
  */
-export function eliminateSymmetric<V>(
+export function eliminateSymmetric(
   front: usize,
   frontOrder: i32,
   frontSummed: i32,
@@ -99,8 +100,8 @@ export function eliminateSymmetric<V>(
     // Two columns at least, so that a 2×2 pivot fits.
     const end = min(summed, max(done + 2, min(done + PANEL, candidatesEnd)));
     candidatesEnd = max(candidatesEnd, end);
-    const pivoted = eliminatePanel<V>(done, end);
-    bringUpToDate<V>(done, pivoted, end, order);
+    const pivoted = eliminatePanel(done, end);
+    bringUpToDate(done, pivoted, end, order);
     const active = rejectedFrom;
     moveBehind(active, end, candidatesEnd);
     candidatesEnd -= end - active;
@@ -111,15 +112,15 @@ export function eliminateSymmetric<V>(
 }
 
 /** Eliminates what it can of the columns [begin, end), block by block; `rejectedFrom` tells which are left. */
-function eliminatePanel<V>(begin: i32, end: i32): i32 {
+function eliminatePanel(begin: i32, end: i32): i32 {
   let k = begin;
   let active = end;
   closed = false;
   while (k < active && !closed) {
     const blockEnd = min(end, max(k + 2, min(k + BLOCK, active)));
     active = max(active, blockEnd);
-    const pivoted = eliminateBlock<V>(k, blockEnd, begin, end);
-    bringUpToDate<V>(k, pivoted, blockEnd, end);
+    const pivoted = eliminateBlock(k, blockEnd, begin, end);
+    bringUpToDate(k, pivoted, blockEnd, end);
     moveBehind(rejectedFrom, blockEnd, active);
     active -= blockEnd - rejectedFrom;
     k = pivoted;
@@ -129,13 +130,13 @@ function eliminatePanel<V>(begin: i32, end: i32): i32 {
 }
 
 /** Eliminates what it can of the columns [begin, end), which alone are kept up to date; rejected ones end up last. */
-function eliminateBlock<V>(begin: i32, end: i32, panelBegin: i32, panelEnd: i32): i32 {
+function eliminateBlock(begin: i32, end: i32, panelBegin: i32, panelEnd: i32): i32 {
   let k = begin;
   rejectedFrom = end;
   while (k < rejectedFrom) {
     // Columns up to here may serve as partners.
     const currentEnd = k === panelBegin ? summed : k === begin ? panelEnd : end;
-    const size = choosePivot<V>(k, currentEnd, panelEnd);
+    const size = choosePivot(k, currentEnd, panelEnd);
     if (size < 0) {
       closed = size === CLOSE_PANEL;
       // What stays in the block is taken up again by the next one.
@@ -147,8 +148,8 @@ function eliminateBlock<V>(begin: i32, end: i32, panelBegin: i32, panelEnd: i32)
       swap(k, rejectedFrom);
       continue;
     }
-    if (size === 1) eliminateOne<V>(k, end);
-    else eliminateTwo<V>(k, end);
+    if (size === 1) eliminateOne(k, end);
+    else eliminateTwo(k, end);
     k += size;
   }
   rejectedFrom = max(rejectedFrom, k);
@@ -156,9 +157,9 @@ function eliminateBlock<V>(begin: i32, end: i32, panelBegin: i32, panelEnd: i32)
 }
 
 /** Size of the pivot to eliminate at k, after moving its partner to k + 1, or a refusal. */
-function choosePivot<V>(k: i32, currentEnd: i32, panelEnd: i32): i32 {
+function choosePivot(k: i32, currentEnd: i32, panelEnd: i32): i32 {
   const size = abs<f64>(load<f64>(at(k, k)));
-  const offDiagonal = largestBelow<V>(k, k + 1);
+  const offDiagonal = largestBelow(k, k + 1);
   if (size <= tiny && offDiagonal <= tiny) {
     store<f64>(at(k, k), load<f64>(at(k, k)) < 0 ? -tiny : tiny);
     perturbed++;
@@ -170,7 +171,7 @@ function choosePivot<V>(k: i32, currentEnd: i32, panelEnd: i32): i32 {
     if (partner >= panelEnd && partner >= currentEnd) return CLOSE_PANEL;
     if (partner >= currentEnd) return CLOSE_BLOCK;
     swap(k + 1, partner);
-    if (acceptsPair<V>(k)) return 2;
+    if (acceptsPair(k)) return 2;
   }
   // The largest entry is refused only when it is not finite; the solve will report that.
   return size >= THRESHOLD * offDiagonal || (forced && currentEnd === summed) ? 1 : REJECT;
@@ -191,12 +192,12 @@ function strongestPartner(k: i32): i32 {
 }
 
 /** Largest modulus of column k in the rows from `from` on; NaN is passed over. */
-function largestBelow<V>(k: i32, from: i32): f64 {
-  const width = widthOf<V>();
-  let best = zero<V>();
+function largestBelow(k: i32, from: i32): f64 {
+  const width = widthOf();
+  let best = zero();
   let i = from;
-  for (; i + width <= order; i += width) best = larger<V>(best, magnitude<V>(load<V>(at(i, k))));
-  let result = largestLane<V>(best);
+  for (; i + width <= order; i += width) best = larger(best, magnitude(load<Lane>(at(i, k))));
+  let result = largestLane(best);
   for (; i < order; i++) {
     const modulus = abs<f64>(load<f64>(at(i, k)));
     if (modulus > result) result = modulus;
@@ -205,14 +206,14 @@ function largestBelow<V>(k: i32, from: i32): f64 {
 }
 
 /** |E⁻¹| (largest entries beside the block) ≤ 1/threshold, for the block E at k and k + 1. */
-function acceptsPair<V>(k: i32): bool {
+function acceptsPair(k: i32): bool {
   const a = load<f64>(at(k, k));
   const b = load<f64>(at(k + 1, k));
   const c = load<f64>(at(k + 1, k + 1));
   const determinant = abs<f64>(a * c - b * b);
   if (determinant < THRESHOLD * max<f64>(abs<f64>(a * c), b * b)) return false;
-  const first = largestBelow<V>(k, k + 2);
-  const second = largestBelow<V>(k + 1, k + 2);
+  const first = largestBelow(k, k + 2);
+  const second = largestBelow(k + 1, k + 2);
   const one = abs<f64>(c) * first + abs<f64>(b) * second;
   const two = abs<f64>(b) * first + abs<f64>(a) * second;
   return THRESHOLD * max<f64>(one, two) <= determinant;
@@ -246,7 +247,7 @@ function moveBehind(from: i32, end: i32, last: i32): void {
   for (let t = 0; t < swaps; t++) swap(from + t, last - 1 - t);
 }
 
-function eliminateOne<V>(k: i32, end: i32): void {
+function eliminateOne(k: i32, end: i32): void {
   const d = load<f64>(at(k, k));
   store<f64>(diagonal + ((<usize>k) << 4), d);
   const inverse = 1 / d;
@@ -257,11 +258,11 @@ function eliminateOne<V>(k: i32, end: i32): void {
     store<f64>(column + i, x * inverse);
   }
   for (let j = k + 1; j < end; j++) {
-    subtractOne<V>(at(j, j), at(j, k), load<f64>(before + ((<usize>j) << 3)), order - j);
+    subtractOne(at(j, j), at(j, k), load<f64>(before + ((<usize>j) << 3)), order - j);
   }
 }
 
-function eliminateTwo<V>(k: i32, end: i32): void {
+function eliminateTwo(k: i32, end: i32): void {
   const a = load<f64>(at(k, k));
   const b = load<f64>(at(k + 1, k));
   const c = load<f64>(at(k + 1, k + 1));
@@ -284,19 +285,19 @@ function eliminateTwo<V>(k: i32, end: i32): void {
   }
   for (let j = k + 2; j < end; j++) {
     const w = (<usize>j) << 3;
-    subtractOne<V>(at(j, j), at(j, k), load<f64>(before + w), order - j);
-    subtractOne<V>(at(j, j), at(j, k + 1), load<f64>(other + w), order - j);
+    subtractOne(at(j, j), at(j, k), load<f64>(before + w), order - j);
+    subtractOne(at(j, j), at(j, k + 1), load<f64>(other + w), order - j);
   }
 }
 
 /** Brings the columns [from, to) up to date with the pivots [begin, pivoted): A ← A − L (D Lᵀ). */
-function bringUpToDate<V>(begin: i32, pivoted: i32, from: i32, to: i32): void {
+function bringUpToDate(begin: i32, pivoted: i32, from: i32, to: i32): void {
   const k = pivoted - begin;
   if (k === 0) return;
   for (let j = from; j < to; j += UPDATE_COLUMNS) {
     const columns = min(UPDATE_COLUMNS, to - j);
     scaleRows(begin, k, j, columns);
-    subtractLargeRealProduct<V>(at(j, j), order, at(j, begin), order, scaled, k, order - j, columns, k);
+    subtractLargeRealProduct(at(j, j), order, at(j, begin), order, scaled, k, order - j, columns, k);
   }
 }
 

@@ -5,6 +5,7 @@
  * Source: Goto & van de Geijn, ACM TOMS 34(3), 2008.
  */
 
+import { Lane } from "./lane";
 import { copyPadded, multiplyAdd, splatAt, subtract, widthOf, zero } from "./lanes";
 import { TILE_COLUMNS } from "./layout";
 
@@ -12,17 +13,17 @@ import { TILE_COLUMNS } from "./layout";
 const TILE_ROW: usize = (<usize>TILE_COLUMNS) << 3;
 
 /** Strips of two vectors of rows, column by column, from `a` (rows×depth); missing rows are zero. */
-export function packLeft<V>(to: usize, a: usize, stride: i32, rows: i32, depth: i32): void {
-  const strip = 2 * widthOf<V>();
-  const half: usize = sizeof<V>();
+export function packLeft(to: usize, a: usize, stride: i32, rows: i32, depth: i32): void {
+  const strip = 2 * widthOf();
+  const half: usize = sizeof<Lane>();
   const step = (<usize>stride) << 3;
   for (let i = 0; i < rows; i += strip) {
     const left = rows - i;
     let from = a + ((<usize>i) << 3);
     for (let p = 0; p < depth; p++) {
       if (left >= strip) {
-        store<V>(to, load<V>(from));
-        store<V>(to + half, load<V>(from + half));
+        store<Lane>(to, load<Lane>(from));
+        store<Lane>(to + half, load<Lane>(from + half));
       } else copyPadded(to, from, left, strip);
       to += 2 * half;
       from += step;
@@ -31,9 +32,9 @@ export function packLeft<V>(to: usize, a: usize, stride: i32, rows: i32, depth: 
 }
 
 /** The same for Aᵀ, whose rows are the columns of `a` (depth×rows). */
-export function packLeftTransposed<V>(to: usize, a: usize, stride: i32, rows: i32, depth: i32): void {
-  const strip = 2 * widthOf<V>();
-  const half: usize = sizeof<V>();
+export function packLeftTransposed(to: usize, a: usize, stride: i32, rows: i32, depth: i32): void {
+  const strip = 2 * widthOf();
+  const half: usize = sizeof<Lane>();
   for (let i = 0; i < rows; i += strip) {
     for (let t = 0; t < strip; t++) {
       let at = to + ((<usize>(i * depth + t)) << 3);
@@ -74,70 +75,70 @@ export function packRight(to: usize, b: usize, stride: i32, columns: i32, depth:
 }
 
 /** The product of a packed strip and a packed group, column after column at `to`. */
-export function multiplyTile<V>(to: usize, a: usize, b: usize, depth: i32): void {
-  const half: usize = sizeof<V>();
-  let s00 = zero<V>();
-  let s10 = zero<V>();
-  let s01 = zero<V>();
-  let s11 = zero<V>();
-  let s02 = zero<V>();
-  let s12 = zero<V>();
-  let s03 = zero<V>();
-  let s13 = zero<V>();
-  let s04 = zero<V>();
-  let s14 = zero<V>();
-  let s05 = zero<V>();
-  let s15 = zero<V>();
+export function multiplyTile(to: usize, a: usize, b: usize, depth: i32): void {
+  const half: usize = sizeof<Lane>();
+  let s00 = zero();
+  let s10 = zero();
+  let s01 = zero();
+  let s11 = zero();
+  let s02 = zero();
+  let s12 = zero();
+  let s03 = zero();
+  let s13 = zero();
+  let s04 = zero();
+  let s14 = zero();
+  let s05 = zero();
+  let s15 = zero();
   const end = b + <usize>depth * TILE_ROW;
   for (; b < end; b += TILE_ROW, a += 2 * half) {
-    const a0 = load<V>(a);
-    const a1 = load<V>(a + half);
-    const b0 = splatAt<V>(b);
-    s00 = multiplyAdd<V>(a0, b0, s00);
-    s10 = multiplyAdd<V>(a1, b0, s10);
-    const b1 = splatAt<V>(b + 8);
-    s01 = multiplyAdd<V>(a0, b1, s01);
-    s11 = multiplyAdd<V>(a1, b1, s11);
-    const b2 = splatAt<V>(b + 16);
-    s02 = multiplyAdd<V>(a0, b2, s02);
-    s12 = multiplyAdd<V>(a1, b2, s12);
-    const b3 = splatAt<V>(b + 24);
-    s03 = multiplyAdd<V>(a0, b3, s03);
-    s13 = multiplyAdd<V>(a1, b3, s13);
+    const a0 = load<Lane>(a);
+    const a1 = load<Lane>(a + half);
+    const b0 = splatAt(b);
+    s00 = multiplyAdd(a0, b0, s00);
+    s10 = multiplyAdd(a1, b0, s10);
+    const b1 = splatAt(b + 8);
+    s01 = multiplyAdd(a0, b1, s01);
+    s11 = multiplyAdd(a1, b1, s11);
+    const b2 = splatAt(b + 16);
+    s02 = multiplyAdd(a0, b2, s02);
+    s12 = multiplyAdd(a1, b2, s12);
+    const b3 = splatAt(b + 24);
+    s03 = multiplyAdd(a0, b3, s03);
+    s13 = multiplyAdd(a1, b3, s13);
     if (TILE_COLUMNS === 6) {
-      const b4 = splatAt<V>(b + 32);
-      s04 = multiplyAdd<V>(a0, b4, s04);
-      s14 = multiplyAdd<V>(a1, b4, s14);
-      const b5 = splatAt<V>(b + 40);
-      s05 = multiplyAdd<V>(a0, b5, s05);
-      s15 = multiplyAdd<V>(a1, b5, s15);
+      const b4 = splatAt(b + 32);
+      s04 = multiplyAdd(a0, b4, s04);
+      s14 = multiplyAdd(a1, b4, s14);
+      const b5 = splatAt(b + 40);
+      s05 = multiplyAdd(a0, b5, s05);
+      s15 = multiplyAdd(a1, b5, s15);
     }
   }
-  store<V>(to, s00);
-  store<V>(to + half, s10);
-  store<V>(to + 2 * half, s01);
-  store<V>(to + 3 * half, s11);
-  store<V>(to + 4 * half, s02);
-  store<V>(to + 5 * half, s12);
-  store<V>(to + 6 * half, s03);
-  store<V>(to + 7 * half, s13);
+  store<Lane>(to, s00);
+  store<Lane>(to + half, s10);
+  store<Lane>(to + 2 * half, s01);
+  store<Lane>(to + 3 * half, s11);
+  store<Lane>(to + 4 * half, s02);
+  store<Lane>(to + 5 * half, s12);
+  store<Lane>(to + 6 * half, s03);
+  store<Lane>(to + 7 * half, s13);
   if (TILE_COLUMNS === 6) {
-    store<V>(to + 8 * half, s04);
-    store<V>(to + 9 * half, s14);
-    store<V>(to + 10 * half, s05);
-    store<V>(to + 11 * half, s15);
+    store<Lane>(to + 8 * half, s04);
+    store<Lane>(to + 9 * half, s14);
+    store<Lane>(to + 10 * half, s05);
+    store<Lane>(to + 11 * half, s15);
   }
 }
 
 /** C ← C − the tile at `tile`, of which so many rows and columns exist. */
-export function subtractTile<V>(c: usize, tile: usize, cStride: i32, rows: i32, columns: i32): void {
-  const half: usize = sizeof<V>();
+export function subtractTile(c: usize, tile: usize, cStride: i32, rows: i32, columns: i32): void {
+  const half: usize = sizeof<Lane>();
   const step = (<usize>cStride) << 3;
-  const whole = rows === 2 * widthOf<V>();
+  const whole = rows === 2 * widthOf();
   for (let j = 0; j < columns; j++) {
     if (whole) {
-      store<V>(c, subtract<V>(load<V>(c), load<V>(tile)));
-      store<V>(c + half, subtract<V>(load<V>(c + half), load<V>(tile + half)));
+      store<Lane>(c, subtract(load<Lane>(c), load<Lane>(tile)));
+      store<Lane>(c + half, subtract(load<Lane>(c + half), load<Lane>(tile + half)));
     } else {
       for (let i: usize = 0; i < (<usize>rows) << 3; i += 8) {
         store<f64>(c + i, load<f64>(c + i) - load<f64>(tile + i));
