@@ -1,8 +1,9 @@
 /**
- * Child process: measures our own solver on one model and prints a `Row`.
+ * Child process: measures our own solver on one model and prints a `Row`, or why the kernel is absent.
  * Arguments: shape, dofs, seed, `complex` or `symmetric`. The kernel is chosen by DAMPWRIGHT_KERNEL.
  */
 
+import { InputError } from "../../src/errors.js";
 import {
   type ComplexMatrix,
   complexZeros,
@@ -15,7 +16,7 @@ import { factorComplex } from "../../src/numerics/sparse/complex-lu.js";
 import { factorSymmetric } from "../../src/numerics/sparse/symmetric-ldl.js";
 import { type BenchmarkModel, benchmarkModel, shapeNamed } from "./models.js";
 import { complexBackwardError } from "./residual.js";
-import { BLOCK, type Row } from "./row.js";
+import { BLOCK, type Outcome, type Row } from "./row.js";
 
 function complexRow({ pattern, groups, dynamic }: BenchmarkModel): Row {
   const residentBefore = process.memoryUsage.rss();
@@ -93,17 +94,17 @@ function timed<T>(work: () => T): [T, number] {
   return [result, (user + system) / 1e6];
 }
 
-/** More runs while they are short: compilation belongs to the first only. */
+/** More runs while they are short: the compiler of the engine is at work in the first six or so. */
 function repeated(work: () => unknown, firstS: number): number[] {
   const runs: number[] = [];
-  for (let spent = firstS; runs.length < 4 && spent < 5; spent += runs[runs.length - 1])
+  for (let spent = firstS; runs.length < 19 && spent < 4; spent += runs[runs.length - 1])
     runs.push(timed(work)[1]);
   return runs;
 }
 
 function leastSolve<T>(right: () => T, solve: (b: T) => unknown): number {
   let least = Number.POSITIVE_INFINITY;
-  for (let run = 0, spent = 0; run < 5 && spent < 3; run++) {
+  for (let run = 0, spent = 0; run < 20 && spent < 2; run++) {
     const b = right();
     const seconds = timed(() => solve(b))[1];
     least = Math.min(least, seconds);
@@ -138,8 +139,20 @@ function peakResident(): number {
   return 1024 * process.resourceUsage().maxRSS;
 }
 
+/** What the machine refuses is no failure of the benchmark. */
+function outcome(measure: () => Row): Outcome {
+  try {
+    return measure();
+  } catch (error) {
+    const fault = error instanceof InputError ? error.faults[0] : undefined;
+    if (fault?.code !== "kernel.refused") throw error;
+    return { absent: `${fault.message}: ${fault.hint}` };
+  }
+}
+
 const [name, dofs, seed, kind] = process.argv.slice(2);
 const shape = shapeNamed(name);
 if (shape === undefined) throw new Error(`no shape is called ${name}`);
 const model = benchmarkModel(shape, Number(dofs), Number(seed));
-process.stdout.write(JSON.stringify(kind === "symmetric" ? symmetricRow(model) : complexRow(model)));
+const measured = outcome(() => (kind === "symmetric" ? symmetricRow(model) : complexRow(model)));
+process.stdout.write(JSON.stringify(measured));

@@ -56,7 +56,7 @@ def timed(work):
 def repeated(work, first):
     """As in measure.ts: more runs while they are short."""
     runs, spent = [first], first
-    while len(runs) < 5 and spent < 5:
+    while len(runs) < 20 and spent < 4:
         runs.append(timed(work)[1])
         spent += runs[-1]
     return runs
@@ -64,7 +64,7 @@ def repeated(work, first):
 
 def least(work):
     best, spent, runs = float("inf"), 0.0, 0
-    while runs < 5 and spent < 3:
+    while runs < 20 and spent < 2:
         seconds = timed(work)[1]
         best, spent, runs = min(best, seconds), spent + seconds, runs + 1
     return best

@@ -62,10 +62,10 @@ function cells({ name, outcome, comparable }: NamedOutcome, base: Row | undefine
   ];
 }
 
-/** First and last column to the left, the rest to the right; a line of two cells keeps its second as it is. */
+/** First and last column to the left, the rest to the right; a line of two cells keeps its second as it is. The first line has all columns. */
 export function aligned(lines: readonly (readonly string[])[]): string {
   const full = lines.filter((line) => line.length > 2);
-  const width = headings.map((_, c) => Math.max(...full.map((line) => line[c]?.length ?? 0)));
+  const width = lines[0].map((_, c) => Math.max(...full.map((line) => line[c]?.length ?? 0)));
   const pad = (cell: string, c: number, last: number): string =>
     c === 0 ? cell.padEnd(width[0]) : c === last || last === 1 ? cell : cell.padStart(width[c]);
   return lines
