@@ -82,6 +82,7 @@ export class FullModel {
         sIm,
         solveInPlace: (b) => lu.solveInPlace(b).backwardError,
         solveAdjointInPlace: (b) => lu.solveAdjointInPlace(b).backwardError,
+        release: () => lu.release(),
       };
     };
     const factorUndamped = (lambda: number): SymmetricFactorisation => {

@@ -20,7 +20,9 @@ export interface NaturalModes {
 
 /** Number of λ below ω² by Sylvester's law of inertia, and whether the count is a proof. */
 export function countModesBelow(pencil: FullPencil, omega: number): { count: number; reliable: boolean } {
-  const { inertia, inertiaReliable } = pencil.factorUndamped(omega * omega);
+  const factorisation = pencil.factorUndamped(omega * omega);
+  const { inertia, inertiaReliable } = factorisation;
+  factorisation.release();
   return { count: inertia.negative, reliable: inertiaReliable && inertia.zero === 0 };
 }
 

@@ -1,4 +1,4 @@
-import type { Pencil } from "../model/pencil.js";
+import { type Pencil, withFactor } from "../model/pencil.js";
 import { type Neighbourhood, nearbyEigenvalues } from "./nearby-eigenvalues.js";
 
 /** A stretch [from, to] of the imaginary axis [rad/s]. */
@@ -42,7 +42,9 @@ export function walkAxis(pencil: Pencil, { from, to, stride: first, scale, seed 
     const ahead = Math.min(0.8 * stride, 0.5 * (to - at));
     const centre = Math.max(at + ahead, 1e-3 * scale);
     const effort = { ...alongAxis, reach: (centre - at) / 0.89 };
-    const disc = nearbyEigenvalues(pencil, pencil.factor(0, centre), scale, seed + discs.length, effort);
+    const disc = withFactor(pencil, 0, centre, (factor) =>
+      nearbyEigenvalues(pencil, factor, scale, seed + discs.length, effort),
+    );
     discs.push(disc);
     // Too far ahead: a shorter stride closes the gap.
     stride = centre - 0.9 * disc.radius > at ? 0.5 * Math.min(stride, disc.radius) : disc.radius;

@@ -2,6 +2,7 @@
 
 import type { FullModel } from "../fullorder/full-model.js";
 import type { ModelState } from "../model/parametric-model.js";
+import { withFactor } from "../model/pencil.js";
 import { alone, type Crew } from "../parallel/crew.js";
 import { type AxisWalk, type Stretch, walkAxis } from "./axis-walk.js";
 import { type ChannelGain, channelGain } from "./channel-gain.js";
@@ -33,11 +34,11 @@ export interface FullTasks extends Record<string, (full: FullModel, input: never
 export const fullTasks: FullTasks = {
   gain: (full, { state, re, im }) => {
     const pencil = full.pencilAt(state);
-    return channelGain(pencil, pencil.factor(re, im));
+    return withFactor(pencil, re, im, (factor) => channelGain(pencil, factor));
   },
   neighbourhood: (full, { state, re, im, scale, seed }) => {
     const pencil = full.pencilAt(state);
-    return nearbyEigenvalues(pencil, pencil.factor(re, im), scale, seed);
+    return withFactor(pencil, re, im, (factor) => nearbyEigenvalues(pencil, factor, scale, seed));
   },
   walk: (full, input) => walkAxis(full.pencilAt(input.state), input),
 };

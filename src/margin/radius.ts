@@ -1,4 +1,4 @@
-import type { Pencil } from "../model/pencil.js";
+import { type Pencil, withFactor } from "../model/pencil.js";
 import type { ComplexVector } from "../numerics/dense/matrix.js";
 import { type QuadraticEigen, quadraticEigen } from "../numerics/dense/quadratic-eigen.js";
 import type { DensePencil } from "../reduction/reduced-model.js";
@@ -65,7 +65,7 @@ function check(
       // Left of the axis the reduced model is refuted: no limit here.
       return critical.value === 0 && !isUnstable(-re, im, setting.shift) ? 0 : Number.POSITIVE_INFINITY;
     });
-  const gainAt = (omega: number) => channelGain(pencil, pencil.factor(0, omega));
+  const gainAt = (omega: number) => withFactor(pencil, 0, omega, (factor) => channelGain(pencil, factor));
   const gain = gainAt(critical.omega);
   const unbounded =
     critical.sigma === Number.POSITIVE_INFINITY &&

@@ -1,4 +1,4 @@
-import type { Pencil } from "../model/pencil.js";
+import { type Pencil, withFactor } from "../model/pencil.js";
 import { type ComplexVector, complexColumn } from "../numerics/dense/matrix.js";
 import type { QuadraticPoles } from "../numerics/dense/quadratic-companion.js";
 import type { QuadraticEigen } from "../numerics/dense/quadratic-eigen.js";
@@ -109,8 +109,9 @@ export function checkEigenvalue(
   const { re, omega } = critical;
   // A rigid motion makes P(0) singular exactly; a little to the right the iteration works as well.
   const aside = Math.hypot(re, omega) < 1e-6 * shift ? 1e-4 * shift : 0;
-  const factor = pencil.factor(re + aside, omega);
-  const pair = refineEigenpair(pencil, re, omega, lift(critical.right), lift(critical.left), factor);
+  const pair = withFactor(pencil, re + aside, omega, (factor) =>
+    refineEigenpair(pencil, re, omega, lift(critical.right), lift(critical.left), factor),
+  );
   return {
     value: value(pair.re, pair.im),
     omega: Math.abs(pair.im),

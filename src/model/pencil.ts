@@ -11,6 +11,23 @@ export interface PencilFactor {
   solveInPlace(b: ComplexMatrix): number;
   /** b ← P(s)⁻ᴴ b. Returns the worst backward error. */
   solveAdjointInPlace(b: ComplexMatrix): number;
+  /** Its memory may serve the next factorisation; it is not used any more. */
+  release(): void;
+}
+
+/** Work with P(s) factored, s = re + i im, and released afterwards. */
+export function withFactor<Result>(
+  pencil: Pencil,
+  re: number,
+  im: number,
+  work: (factor: PencilFactor) => Result,
+): Result {
+  const factor = pencil.factor(re, im);
+  try {
+    return work(factor);
+  } finally {
+    factor.release();
+  }
 }
 
 /**

@@ -169,6 +169,7 @@ function factorDensePencil(
       lu.solveAdjointInPlace(b);
       return backwardError;
     },
+    release: () => undefined,
   };
 }
 

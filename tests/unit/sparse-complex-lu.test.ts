@@ -341,3 +341,24 @@ describeWithEveryKernel("complex LU of a lightly damped membrane at a resonance"
     expect(Math.abs((length * loss * lambda) / Math.hypot(...phi) - 1)).toBeLessThan(1e-11 + turn * turn);
   });
 });
+
+describeWithEveryKernel("a released complex LU", () => {
+  it("refuses to solve, and the one that takes its memory is right", () => {
+    const problem = plateCase(12, 3);
+    const first = factorCase(problem, problem.groups);
+    const b = rightSides(problem.a.rows, 2, uniform(3));
+    const x = copy(b);
+    first.solveInPlace(x);
+    first.release();
+    expect(() => first.solveInPlace(copy(b))).toThrow(/released/);
+    expect(() => first.logAbsDet).toThrow(/released/);
+    // Twice, so that an array given back twice would be shared.
+    first.release();
+    const [second, third] = [factorCase(problem, problem.groups), factorCase(problem, problem.groups)];
+    for (const again of [second, third]) {
+      const y = copy(b);
+      expect(again.solveInPlace(y).backwardError).toBeLessThan(1e-14);
+      expect(y).toEqual(x);
+    }
+  });
+});

@@ -142,3 +142,19 @@ describeWithEveryKernel("LDLᵀ of a plate", () => {
     expect(factor(shifted, groups).inertia.negative).toBe(below);
   });
 });
+
+describeWithEveryKernel("a released LDLᵀ", () => {
+  it("refuses to solve, and the one that takes its memory is right", () => {
+    const { a, groups } = plateCase(12, 3);
+    const first = factor(a, groups);
+    const b = rightSides(a.rows, 2, 3);
+    const copy = () => ({ ...b, values: b.values.slice() });
+    const x = copy();
+    first.solveInPlace(x);
+    first.release();
+    expect(() => first.solveInPlace(copy())).toThrow(/released/);
+    const y = copy();
+    factor(a, groups).solveInPlace(y);
+    expect(y).toEqual(x);
+  });
+});

@@ -40,6 +40,8 @@ export interface ComplexFactorisation {
   solveInPlace(b: ComplexMatrix): SolveReport;
   /** B ← A⁻ᴴ B (conjugate transpose); otherwise like `solveInPlace`. */
   solveAdjointInPlace(b: ComplexMatrix): SolveReport;
+  /** Gives the memory of the factors to the next factorisation; this one cannot solve any more. */
+  release(): void;
 }
 
 /**
@@ -59,14 +61,18 @@ export function factorComplex(
   const scale = Float64Array.from(exponents, (e) => 2 ** e);
   const scaled = scaledValues(pattern, values, scale);
   const factor = withWorkspace((workspace) => new ComplexMultifrontal(analysis, scaled, workspace).factor());
+  let released = false;
   let known: Determinant | undefined;
   const determinant = (): Determinant => {
+    invariant(!released || known !== undefined, "a released factorisation is asked for its determinant");
     known ??= determinantOf(factor, exponents);
     return known;
   };
   const refinement = new ComplexRefinement(pattern, values, scale);
-  const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport =>
-    refinement.solve(b, adjoint, (x) => solveWithFactor(factor, scale, x, adjoint));
+  const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport => {
+    invariant(!released, "a released factorisation is asked to solve");
+    return refinement.solve(b, adjoint, (x) => solveWithFactor(factor, scale, x, adjoint));
+  };
   return {
     order: analysis.order,
     nonzeros: factor.nonzeros,
@@ -79,6 +85,12 @@ export function factorComplex(
     },
     solveInPlace: (b) => solve(b, false),
     solveAdjointInPlace: (b) => solve(b, true),
+    release: () => {
+      factor.fronts.length = 0;
+      factor.re.release();
+      factor.im.release();
+      released = true;
+    },
   };
 }
 

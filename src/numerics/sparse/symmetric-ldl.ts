@@ -37,6 +37,8 @@ export interface SymmetricFactorisation {
    * @throws NumericalError `numerics.singular` when a value is not finite.
    */
   solveInPlace(b: DenseMatrix): SolveReport;
+  /** Gives the memory of the factors to the next factorisation; this one cannot solve any more. */
+  release(): void;
 }
 
 /** A pivot of at most this many machine epsilons of ‖S A S‖∞ counts as zero. */
@@ -66,12 +68,21 @@ export function factorSymmetric(
     ZERO_PIVOT_EPSILONS * Number.EPSILON * (scaled.norm > 0 ? scaled.norm : 1),
   );
   const refinement = new RealRefinement(a, scale);
+  let released = false;
   return {
     order: analysis.order,
     nonzeros: factor.nonzeros,
     inertia,
     inertiaReliable: factor.perturbedPivots === 0 && inertia.zero === 0,
-    solveInPlace: (b) => refinement.solve(b, (x) => solveWithSymmetricFactor(factor, scale, x)),
+    solveInPlace: (b) => {
+      invariant(!released, "a released factorisation is asked to solve");
+      return refinement.solve(b, (x) => solveWithSymmetricFactor(factor, scale, x));
+    },
+    release: () => {
+      factor.fronts.length = 0;
+      factor.store.release();
+      released = true;
+    },
   };
 }
 
