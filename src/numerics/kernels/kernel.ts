@@ -59,13 +59,21 @@ export interface KernelFunctions {
   ): number;
   perturbedSymmetricPivots(): number;
   symmetricScratch(order: number): number;
-  addSquareUpdate(target: number, stride: number, update: number, size: number, places: number): void;
+  addSquareUpdate(
+    target: number,
+    stride: number,
+    update: number,
+    size: number,
+    places: number,
+    runs: number,
+  ): void;
   addLowerUpdate(
     target: number,
     stride: number,
     update: number,
     size: number,
     places: number,
+    runs: number,
     crossing: number,
   ): void;
   packSquare(to: number, from: number, stride: number, size: number): void;

@@ -214,8 +214,8 @@ class ComplexMultifrontal {
       begin -= 16 * size * size;
       // Below the delayed part rows and columns of an update carry the same dofs.
       updatePlacesInto(integers, front.rowIds / 4, child, delayedAt, this.placeOf);
-      kernel.addSquareUpdate(front.re, order, begin, size, front.rowIds);
-      kernel.addSquareUpdate(front.im, order, begin + 8 * size * size, size, front.rowIds);
+      kernel.addSquareUpdate(front.re, order, begin, size, front.rowIds, front.colIds);
+      kernel.addSquareUpdate(front.im, order, begin + 8 * size * size, size, front.rowIds, front.colIds);
     }
     return begin;
   }

@@ -231,7 +231,7 @@ class SymmetricMultifrontal {
       begin -= 8 * lowerEntries(size);
       updatePlacesInto(integers, front.ids / 4, child, delayedAt, this.placeOf);
       // Only a delayed column can stand behind rows that came after it.
-      kernel.addLowerUpdate(front.values, order, begin, size, front.ids, child.delayed);
+      kernel.addLowerUpdate(front.values, order, begin, size, front.ids, front.scratch, child.delayed);
     }
     return begin;
   }

@@ -1,13 +1,26 @@
 /** Moves between fronts and what lies around them: updates added by places and packed together, rows of right-hand sides. */
 
-/** target[places[i], places[j]] += update[i, j] for a size×size update; `places` holds 32-bit integers. */
-export function addSquareUpdate(target: usize, stride: i32, update: usize, size: i32, places: usize): void {
+import { Lane } from "./lane";
+import { add } from "./lanes";
+
+/**
+ * target[places[i], places[j]] += update[i, j] for a size×size update; `places` holds 32-bit integers.
+ *
+ * @param runs - Scratch of as many integers.
+ */
+export function addSquareUpdate(
+  target: usize,
+  stride: i32,
+  update: usize,
+  size: i32,
+  places: usize,
+  runs: usize,
+): void {
+  measureRuns(runs, places, size);
   for (let j = 0; j < size; j++) {
     const column = target + ((<usize>(load<i32>(places + ((<usize>j) << 2)) * stride)) << 3);
-    for (let i = 0; i < size; i++, update += 8) {
-      const at = column + ((<usize>load<i32>(places + ((<usize>i) << 2))) << 3);
-      store<f64>(at, load<f64>(at) + load<f64>(update));
-    }
+    addColumn(column, update, 0, size, places, runs);
+    update += (<usize>size) << 3;
   }
 }
 
@@ -18,16 +31,48 @@ export function addLowerUpdate(
   update: usize,
   size: i32,
   places: usize,
+  runs: usize,
   crossing: i32,
 ): void {
+  measureRuns(runs, places, size);
   for (let j = 0; j < size; j++) {
     const column = load<i32>(places + ((<usize>j) << 2));
-    for (let i = j; i < size; i++, update += 8) {
-      const row = load<i32>(places + ((<usize>i) << 2));
-      const place = j < crossing && row < column ? column + row * stride : row + column * stride;
-      const at = target + ((<usize>place) << 3);
-      store<f64>(at, load<f64>(at) + load<f64>(update));
+    if (j < crossing) {
+      for (let i = j; i < size; i++) {
+        const row = load<i32>(places + ((<usize>i) << 2));
+        const place = row < column ? column + row * stride : row + column * stride;
+        const at = target + ((<usize>place) << 3);
+        store<f64>(at, load<f64>(at) + load<f64>(update + ((<usize>(i - j)) << 3)));
+      }
+    } else addColumn(target + ((<usize>(column * stride)) << 3), update, j, size, places, runs);
+    update += (<usize>(size - j)) << 3;
+  }
+}
+
+/** At each place the number of consecutive places that start there: mostly long runs, since fronts share orders. */
+function measureRuns(runs: usize, places: usize, size: i32): void {
+  let run = 0;
+  let after = -1;
+  for (let i = size - 1; i >= 0; i--) {
+    const place = load<i32>(places + ((<usize>i) << 2));
+    run = place + 1 === after ? run + 1 : 1;
+    store<i32>(runs + ((<usize>i) << 2), run);
+    after = place;
+  }
+}
+
+/** Adds the rows [from, to) of an update's column, which stand together from `update` on. */
+function addColumn(column: usize, update: usize, from: i32, to: i32, places: usize, runs: usize): void {
+  const width = sizeof<Lane>();
+  for (let i = from; i < to; ) {
+    const run = load<i32>(runs + ((<usize>i) << 2));
+    let at = column + ((<usize>load<i32>(places + ((<usize>i) << 2))) << 3);
+    const end = at + ((<usize>run) << 3);
+    for (; at + width <= end; at += width, update += width) {
+      store<Lane>(at, add(load<Lane>(at), load<Lane>(update)));
     }
+    for (; at < end; at += 8, update += 8) store<f64>(at, load<f64>(at) + load<f64>(update));
+    i += run;
   }
 }
 

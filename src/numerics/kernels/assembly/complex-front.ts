@@ -12,8 +12,8 @@ import { Lane } from "./lane";
 import { larger, largestLane, multiply, multiplyAdd, multiplySubtract, splat, widthOf, zero } from "./lanes";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
-const PANEL: i32 = 60;
-const BLOCK: i32 = 12;
+const PANEL: i32 = 96;
+const BLOCK: i32 = 24;
 /** A pivot must reach this share of its column (squared). */
 const THRESHOLD: f64 = 0.01 * 0.01;
 /** The diagonal is taken, without looking further, from this share on (squared). */

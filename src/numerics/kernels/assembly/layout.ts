@@ -1,15 +1,15 @@
 /** Where the kernels keep their packed panels; what the caller places in the memory starts at `FREE`. */
 
-/** Depth, rows and columns packed at a time: the rows stay in the first-level cache, the columns in the second. */
-export const DEPTH: i32 = 64;
-export const ROWS: i32 = 32;
-export const COLUMNS: i32 = 480;
+/** Depth, rows and columns packed at a time; both stay in the second-level cache. Columns fill whole tiles. */
+export const DEPTH: i32 = 96;
+export const ROWS: i32 = 64;
+export const COLUMNS: i32 = 240;
 
 /** Columns of a tile of the result; its rows are two vectors. Separate products and sums need more registers. */
 export const TILE_COLUMNS: i32 = ASC_FEATURE_RELAXED_SIMD ? 6 : 4;
 
-const LEFT_BYTES: usize = 64 * 32 * 8;
-const RIGHT_BYTES: usize = 64 * 480 * 8;
+const LEFT_BYTES: usize = (<usize>(DEPTH * ROWS)) << 3;
+const RIGHT_BYTES: usize = (<usize>(DEPTH * COLUMNS)) << 3;
 const TILE_BYTES: usize = 6 * 4 * 8;
 
 /** Three planes each: of a complex matrix the real parts, the imaginary parts, and their sums. */

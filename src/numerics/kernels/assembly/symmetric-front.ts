@@ -13,8 +13,8 @@ import { larger, largestLane, magnitude, widthOf, zero } from "./lanes";
 import { subtractOne } from "./real-triangles";
 
 /** Columns eliminated between two updates of the rest of the front, and between two of the panel. */
-const PANEL: i32 = 60;
-const BLOCK: i32 = 12;
+const PANEL: i32 = 96;
+const BLOCK: i32 = 24;
 /** Columns of the rest updated at a time; what lies above the diagonal is wasted. */
 const UPDATE_COLUMNS: i32 = 60;
 /** No entry of L may exceed the inverse of this. */
