@@ -30,7 +30,6 @@ interface MatrixNorms {
 export class ComplexRefinement {
   private readonly pattern: SparsePattern;
   private readonly values: ComplexValues;
-  private readonly ones: Float64Array;
   private readonly scale: Float64Array;
   private readonly inverseScale: Float64Array;
   private readonly norms: MatrixNorms;
@@ -40,7 +39,6 @@ export class ComplexRefinement {
   constructor(pattern: SparsePattern, values: ComplexValues, scale: Float64Array) {
     this.pattern = pattern;
     this.values = values;
-    this.ones = new Float64Array(scale.length).fill(1);
     this.scale = scale;
     this.inverseScale = scale.map((d) => 1 / d);
     const { given, scaled } = matrixNorms(pattern, values, scale);
@@ -117,17 +115,13 @@ export class ComplexRefinement {
     c: number,
     adjoint: boolean,
   ): number {
-    const { ones, scale, inverseScale } = this;
+    const { scale, inverseScale } = this;
     const side = adjoint ? "adjoint" : "plain";
-    const normX = columnNorm(x, c, ones);
-    const normB = columnNorm(b, c, ones);
-    const error = backwardErrorOf(columnNorm(residual, c, ones), this.norms[side], normX, normB);
-    const scaledError = backwardErrorOf(
-      columnNorm(residual, c, scale),
-      this.scaledNorms[side],
-      columnNorm(x, c, inverseScale),
-      columnNorm(b, c, scale),
-    );
+    const [normX, scaledX] = columnNorms(x, c, inverseScale);
+    const [normB, scaledB] = columnNorms(b, c, scale);
+    const [normR, scaledR] = columnNorms(residual, c, scale);
+    const error = backwardErrorOf(normR, this.norms[side], normX, normB);
+    const scaledError = backwardErrorOf(scaledR, this.scaledNorms[side], scaledX, scaledB);
     if (!Number.isFinite(normX) || !Number.isFinite(error) || !Number.isFinite(scaledError)) {
       throw new NumericalError(
         "numerics.singular",
@@ -165,17 +159,20 @@ function copyColumn(target: ComplexMatrix, to: number, source: ComplexMatrix, fr
   target.im.set(source.im.subarray(from * n, (from + 1) * n), to * n);
 }
 
-/** Largest weighted modulus in column c; NaN when an entry is. */
-function columnNorm(x: ComplexMatrix, c: number, weight: Float64Array): number {
-  let largest = 0;
+/** Largest modulus in column c, as it is and weighted; NaN when an entry is. */
+function columnNorms(x: ComplexMatrix, c: number, weight: Float64Array): [plain: number, weighted: number] {
+  let plain = 0;
+  let weighted = 0;
   for (let i = 0, p = c * x.rows; i < x.rows; i++, p++) {
     const re = x.re[p] * weight[i];
     const im = x.im[p] * weight[i];
-    const square = re * re + im * im;
-    if (square > largest) largest = square;
-    else if (Number.isNaN(square)) return Number.NaN;
+    const square = x.re[p] * x.re[p] + x.im[p] * x.im[p];
+    const scaled = re * re + im * im;
+    if (square > plain) plain = square;
+    if (scaled > weighted) weighted = scaled;
+    if (Number.isNaN(scaled)) return [Number.NaN, Number.NaN];
   }
-  return Math.sqrt(largest);
+  return [Math.sqrt(plain), Math.sqrt(weighted)];
 }
 
 /** Norms of A and of D A D with D = diag(scale). */
