@@ -1,5 +1,8 @@
 import nlopt from "nlopt-js";
 
+// Before anything else: a thread that computes or waits for long while this is under way has it complain.
+await nlopt.ready;
+
 /** max over x of the smallest of several pieces, subject to limits: the shape of every worst-case design. */
 export interface MaximinProblem {
   readonly dimension: number;
@@ -46,7 +49,6 @@ export async function maximiseMinimum(
   problem: MaximinProblem,
   options: MaximinOptions,
 ): Promise<MaximinResult> {
-  await nlopt.ready;
   const { dimension: n } = problem;
   const memory = new PointMemory(problem);
   const first = memory.at(options.start);
