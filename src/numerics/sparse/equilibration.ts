@@ -9,8 +9,8 @@
 import type { SparsePattern } from "./sparse-matrix.js";
 
 const MOST_SWEEPS = 5;
-/** Binary orders of magnitude by which a maximum may miss 1 when the sweeps end early. */
-const CLOSE_ENOUGH = 0.1;
+/** Binary orders of magnitude by which a maximum may miss 1 when the sweeps end early; rounding to powers of two misses it by as much. */
+const CLOSE_ENOUGH = 1;
 /** Beyond these exponents products of two factors would leave the range of doubles. */
 const LARGEST_EXPONENT = 400;
 
