@@ -34,9 +34,8 @@ export interface SymbolicAnalysis {
   readonly entryStart: Int32Array;
   /** as positions in the pattern, */
   readonly entries: Int32Array;
-  /** with row and column within the front. */
-  readonly entryRow: Int32Array;
-  readonly entryCol: Int32Array;
+  /** with their places in the front, column after column. */
+  readonly entryPlace: Int32Array;
   readonly largestFront: number;
   /** Most entries of square update matrices that wait at the same time. */
   readonly stackPeak: number;
@@ -185,7 +184,7 @@ function sizes(
   return { predictedNonzeros, largestFront, stackPeak };
 }
 
-type EntryPlaces = Pick<SymbolicAnalysis, "entryStart" | "entries" | "entryRow" | "entryCol">;
+type EntryPlaces = Pick<SymbolicAnalysis, "entryStart" | "entries" | "entryPlace">;
 
 /** Entry (i, j) goes to the front that eliminates the earlier of i and j. */
 function entryPlaces(pattern: SparsePattern, fronts: number, dofs: FrontDofs): EntryPlaces {
@@ -204,14 +203,12 @@ function entryPlaces(pattern: SparsePattern, fronts: number, dofs: FrontDofs): E
   for (let s = 0; s < fronts; s++) entryStart[s + 1] += entryStart[s];
   const next = entryStart.slice(0, fronts);
   const entries = new Int32Array(rowIndex.length);
-  const entryRow = new Int32Array(rowIndex.length);
-  const entryCol = new Int32Array(rowIndex.length);
+  const entryPlace = new Int32Array(rowIndex.length);
   for (let j = 0; j < cols; j++) {
     for (let p = colStart[j]; p < colStart[j + 1]; p++) {
       const t = next[Math.min(frontOf[j], frontOf[rowIndex[p]])]++;
       entries[t] = p;
-      entryRow[t] = rowIndex[p];
-      entryCol[t] = j;
+      entryPlace[t] = j;
     }
   }
   const placeOf = new Int32Array(cols).fill(-1);
@@ -220,9 +217,8 @@ function entryPlaces(pattern: SparsePattern, fronts: number, dofs: FrontDofs): E
     for (let t = pivotStart[s]; t < pivotStart[s + 1]; t++) placeOf[pivots[t]] = place++;
     for (let t = belowStart[s]; t < belowStart[s + 1]; t++) placeOf[below[t]] = place++;
     for (let t = entryStart[s]; t < entryStart[s + 1]; t++) {
-      entryRow[t] = placeOf[entryRow[t]];
-      entryCol[t] = placeOf[entryCol[t]];
+      entryPlace[t] = placeOf[rowIndex[entries[t]]] + placeOf[entryPlace[t]] * place;
     }
   }
-  return { entryStart, entries, entryRow, entryCol };
+  return { entryStart, entries, entryPlace };
 }

@@ -2,7 +2,13 @@ import type { Workspace } from "../kernels/workspace.js";
 import type { SymbolicAnalysis } from "./analysis.js";
 import type { ComplexFactor } from "./complex-substitution.js";
 import { FactorStore } from "./factor-store.js";
-import { childrenOf, type FrontLayout, layOutFront, updatePlacesInto } from "./front-stack.js";
+import {
+  childrenOf,
+  type FrontLayout,
+  layOutFront,
+  placeAmongDelayed,
+  updatePlacesInto,
+} from "./front-stack.js";
 import type { ComplexValues } from "./sparse-matrix.js";
 
 /** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
@@ -62,17 +68,17 @@ export class ComplexMultifrontal {
     return { re, im, rowIds, colIds };
   }
 
-  private enterEntries(s: number, { own, delayed, order }: FrontLayout, front: FrontPlace): void {
-    const { entryStart, entries, entryRow, entryCol } = this.analysis;
+  private enterEntries(s: number, layout: FrontLayout, front: FrontPlace): void {
+    const { entryStart, entries, entryPlace } = this.analysis;
     const { re, im } = this.values;
     const { doubles } = this.workspace;
     const toRe = front.re / 8;
     const toIm = front.im / 8;
+    const asPlaced = layout.delayed === 0;
     for (let t = entryStart[s]; t < entryStart[s + 1]; t++) {
-      const i = entryRow[t] < own ? entryRow[t] : entryRow[t] + delayed;
-      const j = entryCol[t] < own ? entryCol[t] : entryCol[t] + delayed;
-      doubles[toRe + i + j * order] = re[entries[t]];
-      doubles[toIm + i + j * order] = im[entries[t]];
+      const place = asPlaced ? entryPlace[t] : placeAmongDelayed(entryPlace[t], layout);
+      doubles[toRe + place] = re[entries[t]];
+      doubles[toIm + place] = im[entries[t]];
     }
   }
 

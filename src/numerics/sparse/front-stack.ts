@@ -84,6 +84,14 @@ export function updatePlacesInto(
   for (let t = pivots + delayed; t < order; t++) places[at + t - pivots] = placeOf[rowIds[t]];
 }
 
+/** Where an entry stands that the analysis, which knows of no delayed rows, has put at this place. */
+export function placeAmongDelayed(place: number, { own, delayed, order }: FrontLayout): number {
+  const told = order - delayed;
+  const row = place % told;
+  const column = (place - row) / told;
+  return (row < own ? row : row + delayed) + (column < own ? column : column + delayed) * order;
+}
+
 /** Right-hand sides that a substitution takes through the tree together: fewer where their rows would fill the memory. */
 export function columnsTogether(order: number): number {
   return Math.max(4, Math.min(48, Math.floor(2 ** 24 / order)));

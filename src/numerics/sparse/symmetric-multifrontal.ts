@@ -1,7 +1,13 @@
 import type { Workspace } from "../kernels/workspace.js";
 import type { SymbolicAnalysis } from "./analysis.js";
 import { FactorStore } from "./factor-store.js";
-import { childrenOf, type FrontLayout, layOutFront, updatePlacesInto } from "./front-stack.js";
+import {
+  childrenOf,
+  type FrontLayout,
+  layOutFront,
+  placeAmongDelayed,
+  updatePlacesInto,
+} from "./front-stack.js";
 import type { SymmetricFactor } from "./symmetric-substitution.js";
 
 /** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
@@ -63,14 +69,14 @@ export class SymmetricMultifrontal {
     return { values, diagonal, scratch, ids };
   }
 
-  private enterEntries(s: number, { own, delayed, order }: FrontLayout, front: number): void {
-    const { entryStart, entries, entryRow, entryCol } = this.analysis;
+  /** Both triangles, of which the upper one is never looked at. */
+  private enterEntries(s: number, layout: FrontLayout, front: number): void {
+    const { entryStart, entries, entryPlace } = this.analysis;
     const { doubles } = this.workspace;
+    const asPlaced = layout.delayed === 0;
     for (let t = entryStart[s]; t < entryStart[s + 1]; t++) {
-      if (entryRow[t] < entryCol[t]) continue;
-      const i = entryRow[t] < own ? entryRow[t] : entryRow[t] + delayed;
-      const j = entryCol[t] < own ? entryCol[t] : entryCol[t] + delayed;
-      doubles[front + i + j * order] = this.values[entries[t]];
+      const place = asPlaced ? entryPlace[t] : placeAmongDelayed(entryPlace[t], layout);
+      doubles[front + place] = this.values[entries[t]];
     }
   }
 
