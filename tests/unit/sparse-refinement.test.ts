@@ -6,6 +6,10 @@ import { fromTriplets } from "../../src/numerics/sparse/sparse-matrix.js";
 // diag(1e20, 1): in the given units the second row cannot be seen beside the first.
 const a = fromTriplets(2, 2, [0, 1], [0, 1], [1e20, 1]);
 const scale = Float64Array.of(2 ** -33, 1);
+const norms = {
+  given: { plain: 1e20, adjoint: 1e20 },
+  scaled: { plain: 1e20 * 2 ** -66, adjoint: 1e20 * 2 ** -66 },
+};
 
 /** A solve whose second component carries this relative error. */
 const realSolve = (error: number) => (x: { cols: number; values: Float64Array }) => {
@@ -36,7 +40,7 @@ describe("iterative refinement", () => {
     const b = { rows: 2, cols: 1, re: Float64Array.of(1e10, 1), im: Float64Array.of(0, -2) };
     for (const adjoint of [false, true]) {
       const x = { ...b, re: b.re.slice(), im: b.im.slice() };
-      const report = new ComplexRefinement(a, { re: a.values, im: new Float64Array(2) }, scale).solve(
+      const report = new ComplexRefinement(a, { re: a.values, im: new Float64Array(2) }, scale, norms).solve(
         x,
         adjoint,
         complexSolve(0.001),
@@ -55,7 +59,7 @@ describe("iterative refinement", () => {
     expect(report.refinements).toBe(1);
     expect(b.values[1]).toBe(4);
     const c = { rows: 2, cols: 1, re: Float64Array.of(1e10, 1), im: new Float64Array(2) };
-    const complex = new ComplexRefinement(a, { re: a.values, im: new Float64Array(2) }, scale);
+    const complex = new ComplexRefinement(a, { re: a.values, im: new Float64Array(2) }, scale, norms);
     expect(complex.solve(c, false, complexSolve(3)).backwardError).toBeGreaterThan(0.1);
   });
 });

@@ -36,6 +36,7 @@ export const KERNEL_VARIABLE = "DAMPWRIGHT_KERNEL";
  */
 export interface KernelFunctions {
   firstFree(): number;
+  clear(at: number, end: number): void;
   setOutsideFrom(size: number): void;
   eliminateComplex(
     re: number,

@@ -10,8 +10,8 @@ import type { ComplexMatrix } from "../dense/matrix.js";
 import { withWorkspace } from "../kernels/workspace.js";
 import type { SymbolicAnalysis } from "./analysis.js";
 import type { SolveReport } from "./backward-error.js";
-import { ComplexMultifrontal } from "./complex-multifrontal.js";
-import { ComplexRefinement } from "./complex-refinement.js";
+import { ComplexMultifrontal, type ScaledValues } from "./complex-multifrontal.js";
+import { ComplexRefinement, type RefinementNorms } from "./complex-refinement.js";
 import { type ComplexFactor, solveWithFactor } from "./complex-substitution.js";
 import { equilibrationExponents } from "./equilibration.js";
 import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
@@ -67,7 +67,8 @@ export function factorComplex(
     known ??= determinantOf(factor, exponents);
     return known;
   };
-  const refinement = new ComplexRefinement(pattern, values, scale);
+  const norm = scaled.norms.scaled.plain;
+  const refinement = new ComplexRefinement(pattern, values, scale, scaled.norms);
   const solve = (b: ComplexMatrix, adjoint: boolean): SolveReport => {
     invariant(!released, "a released factorisation is asked to solve");
     return refinement.solve(b, adjoint, (x) => solveWithFactor(factor, scale, x, adjoint));
@@ -75,7 +76,7 @@ export function factorComplex(
   return {
     order: analysis.order,
     nonzeros: factor.nonzeros,
-    negligiblePivots: negligiblePivotsOf(factor, NEGLIGIBLE_PIVOT * (scaled.norm > 0 ? scaled.norm : 1)),
+    negligiblePivots: negligiblePivotsOf(factor, NEGLIGIBLE_PIVOT * (norm > 0 ? norm : 1)),
     get logAbsDet() {
       return determinant().logAbs;
     },
@@ -109,25 +110,44 @@ function moduli({ re, im }: ComplexValues): Float64Array {
   return modulus;
 }
 
-/** D A D with D = diag(scale), and a bound of its infinity norm. */
+/** D A D with D = diag(scale), and the norms that refinement needs of both matrices. */
 function scaledValues(
-  pattern: SparsePattern,
+  { cols, colStart, rowIndex }: SparsePattern,
   values: ComplexValues,
   scale: Float64Array,
-): ComplexValues & { readonly norm: number } {
-  const { cols, colStart, rowIndex } = pattern;
+): ScaledValues & { readonly norms: RefinementNorms } {
   const re = new Float64Array(rowIndex.length);
   const im = new Float64Array(rowIndex.length);
   const rowSum = new Float64Array(cols);
+  const scaledRowSum = new Float64Array(cols);
+  let [adjoint, scaledAdjoint, largest] = [0, 0, 0];
   for (let j = 0; j < cols; j++) {
+    const own = scale[j];
+    let [columnSum, scaledColumnSum] = [0, 0];
     for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-      const factor = scale[rowIndex[p]] * scale[j];
-      re[p] = values.re[p] * factor;
-      im[p] = values.im[p] * factor;
-      rowSum[rowIndex[p]] += Math.abs(re[p]) + Math.abs(im[p]);
+      const i = rowIndex[p];
+      const x = values.re[p];
+      const y = values.im[p];
+      const factor = scale[i] * own;
+      re[p] = x * factor;
+      im[p] = y * factor;
+      largest = Math.max(largest, Math.abs(re[p]), Math.abs(im[p]));
+      const modulus = Math.sqrt(x * x + y * y);
+      columnSum += modulus;
+      rowSum[i] += modulus;
+      scaledColumnSum += modulus * factor;
+      scaledRowSum[i] += modulus * factor;
     }
+    adjoint = Math.max(adjoint, columnSum);
+    scaledAdjoint = Math.max(scaledAdjoint, scaledColumnSum);
   }
-  return { re, im, norm: rowSum.reduce((most, sum) => Math.max(most, sum), 0) };
+  let [plain, scaledPlain] = [0, 0];
+  for (let i = 0; i < cols; i++) {
+    plain = Math.max(plain, rowSum[i]);
+    scaledPlain = Math.max(scaledPlain, scaledRowSum[i]);
+  }
+  const norms = { given: { plain, adjoint }, scaled: { plain: scaledPlain, adjoint: scaledAdjoint } };
+  return { re, im, largest, norms };
 }
 
 function negligiblePivotsOf(factor: ComplexFactor, bound: number): number {

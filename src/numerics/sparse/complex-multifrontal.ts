@@ -11,10 +11,15 @@ import {
 } from "./front-stack.js";
 import type { ComplexValues } from "./sparse-matrix.js";
 
+/** The values of an equilibrated matrix, and the largest real or imaginary part. */
+export interface ScaledValues extends ComplexValues {
+  readonly largest: number;
+}
+
 /** One run over the tree of fronts; updates wait at the bottom of the workspace, the front lies above them. */
 export class ComplexMultifrontal {
   private readonly analysis: SymbolicAnalysis;
-  private readonly values: ComplexValues;
+  private readonly values: ScaledValues;
   private readonly workspace: Workspace;
   private readonly tiny: number;
   private readonly placeOf: Int32Array;
@@ -22,16 +27,12 @@ export class ComplexMultifrontal {
   private top: number;
   private readonly factorOut: ComplexFactor;
 
-  constructor(analysis: SymbolicAnalysis, values: ComplexValues, workspace: Workspace) {
+  constructor(analysis: SymbolicAnalysis, values: ScaledValues, workspace: Workspace) {
     this.analysis = analysis;
     this.values = values;
     this.workspace = workspace;
     this.top = workspace.begin;
-    let largest = 0;
-    for (let p = 0; p < values.re.length; p++) {
-      largest = Math.max(largest, Math.abs(values.re[p]), Math.abs(values.im[p]));
-    }
-    this.tiny = Number.EPSILON * (largest > 0 ? largest : 1);
+    this.tiny = Number.EPSILON * (values.largest > 0 ? values.largest : 1);
     this.placeOf = new Int32Array(analysis.order);
     this.factorOut = {
       order: analysis.order,
@@ -64,7 +65,7 @@ export class ComplexMultifrontal {
     const rowIds = im + entries;
     const colIds = rowIds + 4 * order;
     this.workspace.ensure(colIds + 4 * order);
-    this.workspace.doubles.fill(0, re / 8, rowIds / 8);
+    this.workspace.kernel.clear(re, rowIds);
     return { re, im, rowIds, colIds };
   }
 

@@ -22,9 +22,15 @@ import {
 import type { ComplexValues, SparsePattern } from "./sparse-matrix.js";
 
 /** Infinity norms of A and Aᴴ. */
-interface MatrixNorms {
+export interface MatrixNorms {
   readonly plain: number;
   readonly adjoint: number;
+}
+
+/** Norms of A and of the equilibrated D A D. */
+export interface RefinementNorms {
+  readonly given: MatrixNorms;
+  readonly scaled: MatrixNorms;
 }
 
 export class ComplexRefinement {
@@ -36,14 +42,13 @@ export class ComplexRefinement {
   private readonly scaledNorms: MatrixNorms;
 
   /** @param scale - The diagonal of D that equilibrates D A D. */
-  constructor(pattern: SparsePattern, values: ComplexValues, scale: Float64Array) {
+  constructor(pattern: SparsePattern, values: ComplexValues, scale: Float64Array, norms: RefinementNorms) {
     this.pattern = pattern;
     this.values = values;
     this.scale = scale;
     this.inverseScale = scale.map((d) => 1 / d);
-    const { given, scaled } = matrixNorms(pattern, values, scale);
-    this.norms = given;
-    this.scaledNorms = scaled;
+    this.norms = norms.given;
+    this.scaledNorms = norms.scaled;
   }
 
   /**
@@ -173,34 +178,4 @@ function columnNorms(x: ComplexMatrix, c: number, weight: Float64Array): [plain:
     if (Number.isNaN(scaled)) return [Number.NaN, Number.NaN];
   }
   return [Math.sqrt(plain), Math.sqrt(weighted)];
-}
-
-/** Norms of A and of D A D with D = diag(scale). */
-function matrixNorms(
-  { rows, cols, colStart, rowIndex }: SparsePattern,
-  values: ComplexValues,
-  scale: Float64Array,
-): { readonly given: MatrixNorms; readonly scaled: MatrixNorms } {
-  const rowSum = new Float64Array(rows);
-  const scaledRowSum = new Float64Array(rows);
-  let [adjoint, scaledAdjoint] = [0, 0];
-  for (let j = 0; j < cols; j++) {
-    let [columnSum, scaledColumnSum] = [0, 0];
-    for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-      const i = rowIndex[p];
-      const modulus = Math.sqrt(values.re[p] * values.re[p] + values.im[p] * values.im[p]);
-      columnSum += modulus;
-      rowSum[i] += modulus;
-      scaledColumnSum += modulus * scale[i];
-      scaledRowSum[i] += modulus * scale[j];
-    }
-    adjoint = Math.max(adjoint, columnSum);
-    scaledAdjoint = Math.max(scaledAdjoint, scaledColumnSum * scale[j]);
-  }
-  let [plain, scaledPlain] = [0, 0];
-  for (let i = 0; i < rows; i++) {
-    plain = Math.max(plain, rowSum[i]);
-    scaledPlain = Math.max(scaledPlain, scaledRowSum[i] * scale[i]);
-  }
-  return { given: { plain, adjoint }, scaled: { plain: scaledPlain, adjoint: scaledAdjoint } };
 }

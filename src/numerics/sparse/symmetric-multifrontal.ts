@@ -65,7 +65,7 @@ export class SymmetricMultifrontal {
     const scratch = diagonal + 16 * (own + delayed);
     const ids = scratch + 8 * workspace.kernel.symmetricScratch(order);
     workspace.ensure(ids + 4 * order);
-    workspace.doubles.fill(0, values / 8, diagonal / 8);
+    workspace.kernel.clear(values, diagonal);
     return { values, diagonal, scratch, ids };
   }
 

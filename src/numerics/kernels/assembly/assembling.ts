@@ -133,3 +133,8 @@ export function scatterRows(to: usize, columns: i32, ids: usize, from: usize, st
     }
   }
 }
+
+/** Zeros from `at` up to `end`. */
+export function clear(at: usize, end: usize): void {
+  memory.fill(at, 0, end - at);
+}

@@ -5,6 +5,7 @@ import { FREE } from "./layout";
 export {
   addLowerUpdate,
   addSquareUpdate,
+  clear,
   gatherRows,
   packLower,
   packRows,
