@@ -50,6 +50,24 @@ describe("the choice of a kernel", () => {
   });
 });
 
+describe("a machine with little address space", () => {
+  it("is told what to do instead, and the build without WebAssembly starts", () => {
+    class Refusing {
+      constructor() {
+        throw new RangeError("could not allocate memory");
+      }
+    }
+    vi.stubGlobal(
+      "WebAssembly",
+      new Proxy(WebAssembly, { get: (all, name) => (name === "Memory" ? Refusing : Reflect.get(all, name)) }),
+    );
+    expect(() => startKernel("simd")).toThrow(NumericalError);
+    expect(() => startKernel("simd")).toThrow(/address space/);
+    expect(startKernel("plain").name).toBe("plain");
+    vi.unstubAllGlobals();
+  });
+});
+
 describe("the workspace", () => {
   it("grows without losing what it holds", () => {
     for (const name of KERNEL_NAMES) {

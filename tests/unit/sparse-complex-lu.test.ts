@@ -362,3 +362,23 @@ describeWithEveryKernel("a released complex LU", () => {
     }
   });
 });
+
+describeWithEveryKernel("complex LU in units whose squares no double holds", () => {
+  it.each([1e-100, 1e160, 1e200])("tells the backward error of entries of size %s", (size) => {
+    const rows = [0, 1, 2, 0, 1, 1, 2];
+    const cols = [0, 1, 2, 1, 0, 2, 1];
+    const numbers = [2, 3, 4, 1, 1, -1, -1];
+    const solved = [1, size].map((unit) => {
+      const re = numbers.map((value) => value * unit);
+      const a = fromTriplets(3, 3, rows, cols, re);
+      const factor = factorComplex(analyse(a), a, { re: a.values, im: a.values.map((value) => 0.1 * value) });
+      expect(factor.negligiblePivots).toBe(0);
+      const x = { rows: 3, cols: 1, re: Float64Array.of(1, 2, 3), im: new Float64Array(3) };
+      const { backwardError } = factor.solveInPlace(x);
+      expect(backwardError).toBeGreaterThan(0);
+      expect(backwardError).toBeLessThan(1e-15);
+      return x.re[2]! * unit;
+    });
+    expect(solved[1]! / solved[0]!).toBeCloseTo(1, 14);
+  });
+});

@@ -13,7 +13,7 @@
 import { readFileSync } from "node:fs";
 import { createRequire } from "node:module";
 import { setFlagsFromString } from "node:v8";
-import { InputError } from "../../errors.js";
+import { InputError, NumericalError } from "../../errors.js";
 import {
   hostBlas,
   nothingOutside,
@@ -162,7 +162,11 @@ const WASM_PAGES = 65_536;
 /** JavaScript builds compute addresses as signed 32-bit integers. */
 const PLAIN_PAGES = 32_767;
 
-/** Starts this build on a memory of its own. @throws InputError when the machine refuses it. */
+/**
+ * Starts this build on a memory of its own.
+ * @throws InputError `kernel.refused` when the machine refuses the build; NumericalError
+ *   `kernel.no-addresses` when it refuses the memory.
+ */
 export function startKernel(name: KernelName): StartedKernel {
   if (name === "blas") return startWithBlas();
   if (name === "plain") return startPlain(() => nothingOutside);
@@ -175,11 +179,25 @@ export function startKernel(name: KernelName): StartedKernel {
 type Outside = (memory: () => ArrayBufferLike) => OutsideProducts;
 
 function startModule(name: KernelName, module: WebAssembly.Module, outside: Outside): StartedKernel {
-  const memory = new WebAssembly.Memory({ initial: FIRST_PAGES, maximum: WASM_PAGES });
+  const memory = reservedMemory();
   const host = outside(() => memory.buffer);
   const instance = new WebAssembly.Instance(module, { env: { memory }, host });
   const functions = instance.exports as unknown as KernelFunctions;
   return { name, functions, memory, mostPages: WASM_PAGES };
+}
+
+/** WebAssembly claims all the addresses that a memory may ever have, whatever it uses of them. */
+function reservedMemory(): WebAssembly.Memory {
+  try {
+    return new WebAssembly.Memory({ initial: FIRST_PAGES, maximum: WASM_PAGES });
+  } catch (error) {
+    if (!(error instanceof RangeError)) throw error;
+    throw new NumericalError(
+      "kernel.no-addresses",
+      "the machine refuses the address space that WebAssembly wants, some 10 GiB for each thread",
+      `Raise the limit of virtual memory (ulimit -v), compute with --threads 1, or set ${KERNEL_VARIABLE} to "plain".`,
+    );
+  }
 }
 
 function startPlain(outside: Outside): StartedKernel {

@@ -126,17 +126,19 @@ function scaledValues(
     let [columnSum, scaledColumnSum] = [0, 0];
     for (let p = colStart[j]; p < colStart[j + 1]; p++) {
       const i = rowIndex[p];
-      const x = values.re[p];
-      const y = values.im[p];
       const factor = scale[i] * own;
-      re[p] = x * factor;
-      im[p] = y * factor;
-      largest = Math.max(largest, Math.abs(re[p]), Math.abs(im[p]));
-      const modulus = Math.sqrt(x * x + y * y);
+      const x = values.re[p] * factor;
+      const y = values.im[p] * factor;
+      re[p] = x;
+      im[p] = y;
+      largest = Math.max(largest, Math.abs(x), Math.abs(y));
+      // Of the scaled entry, whose square neither overflows nor vanishes; powers of two divide exactly.
+      const scaledModulus = Math.sqrt(x * x + y * y);
+      const modulus = scaledModulus / factor;
       columnSum += modulus;
       rowSum[i] += modulus;
-      scaledColumnSum += modulus * factor;
-      scaledRowSum[i] += modulus * factor;
+      scaledColumnSum += scaledModulus;
+      scaledRowSum[i] += scaledModulus;
     }
     adjoint = Math.max(adjoint, columnSum);
     scaledAdjoint = Math.max(scaledAdjoint, scaledColumnSum);

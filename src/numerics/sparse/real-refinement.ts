@@ -14,6 +14,7 @@ import {
   type SolveReport,
   STAGNATION,
 } from "./backward-error.js";
+import { subtractFourTransposed } from "./real-sparse-products.js";
 import { multiplyTransposedAddInto, type SparseMatrix } from "./sparse-matrix.js";
 
 /** Columns that share a pass over the matrix. */
@@ -105,7 +106,7 @@ export class RealRefinement {
     const columns = Array.from({ length: count }, (_, t) => column(x, first + t));
     const sums = columns.map((_, t) => column(residual, first + t));
     for (let t = 0; t < count; t++) sums[t].set(column(b, first + t));
-    if (count === SHARED_COLUMNS) subtractFour(this.a, columns, sums);
+    if (count === SHARED_COLUMNS) subtractFourTransposed(this.a, columns, sums);
     else for (let t = 0; t < count; t++) multiplyTransposedAddInto(sums[t], -1, this.a, columns[t]);
   }
 
@@ -130,32 +131,6 @@ export class RealRefinement {
       );
     }
     return Math.max(error, scaledError);
-  }
-}
-
-/** Y ← Y − Aᵀ X for four columns in one pass over the matrix. */
-function subtractFour(
-  { cols, colStart, rowIndex, values }: SparseMatrix,
-  [x0, x1, x2, x3]: readonly Float64Array[],
-  [y0, y1, y2, y3]: readonly Float64Array[],
-): void {
-  for (let j = 0; j < cols; j++) {
-    let s0 = 0;
-    let s1 = 0;
-    let s2 = 0;
-    let s3 = 0;
-    for (let p = colStart[j]; p < colStart[j + 1]; p++) {
-      const i = rowIndex[p];
-      const a = values[p];
-      s0 += a * x0[i];
-      s1 += a * x1[i];
-      s2 += a * x2[i];
-      s3 += a * x3[i];
-    }
-    y0[j] -= s0;
-    y1[j] -= s1;
-    y2[j] -= s2;
-    y3[j] -= s3;
   }
 }
 

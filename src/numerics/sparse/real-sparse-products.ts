@@ -125,3 +125,29 @@ export function addPencilProductInto(
     }
   }
 }
+
+/** Y ← Y − Aᵀ X for four columns in one pass over the matrix. */
+export function subtractFourTransposed(
+  { cols, colStart, rowIndex, values }: SparseMatrix,
+  [x0, x1, x2, x3]: readonly Float64Array[],
+  [y0, y1, y2, y3]: readonly Float64Array[],
+): void {
+  for (let j = 0; j < cols; j++) {
+    let s0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    let s3 = 0;
+    for (let p = colStart[j]; p < colStart[j + 1]; p++) {
+      const i = rowIndex[p];
+      const a = values[p];
+      s0 += a * x0[i];
+      s1 += a * x1[i];
+      s2 += a * x2[i];
+      s3 += a * x3[i];
+    }
+    y0[j] -= s0;
+    y1[j] -= s1;
+    y2[j] -= s2;
+    y3[j] -= s3;
+  }
+}
